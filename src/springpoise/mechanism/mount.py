@@ -1,0 +1,143 @@
+"""A spring in its place."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import attrs
+import numpy as np
+
+from springpoise import units
+from springpoise.carriers import Carrier, namespace
+from springpoise.errors import InputTypeError
+from springpoise.linkages.protocol import Linkage
+from springpoise.paths.protocol import Path, friction_gradient_of
+from springpoise.springs.protocol import Spring, hysteresis_of, working_range_of
+
+__all__ = ["SpringMount", "SpringState"]
+
+
+def _spring(value: Any) -> Any:
+    missing = [name for name in ("load", "stiffness", "energy") if not callable(getattr(value, name, None))]
+    if missing or isinstance(value, type):
+        what = f"the class {value.__name__}, not an object of it" if isinstance(value, type) else repr(value)
+        lacking = f"; it lacks {', '.join(missing)}" if missing else ""
+        raise InputTypeError(f"SpringMount.spring must have load, stiffness and energy methods, got {what}{lacking}")
+    return value
+
+
+def _path(value: Any) -> Any:
+    missing = [name for name in ("length", "gradient") if not callable(getattr(value, name, None))]
+    if missing or isinstance(value, type):
+        what = f"the class {value.__name__}, not an object of it" if isinstance(value, type) else repr(value)
+        lacking = f"; it lacks {', '.join(missing)}" if missing else ""
+        raise InputTypeError(f"SpringMount.path must have length and gradient methods, got {what}{lacking}")
+    return value
+
+
+def _count(value: Any) -> Any:
+    if isinstance(value, bool) or not isinstance(value, int | np.integer) or value < 1:
+        raise InputTypeError(f"SpringMount.count must be a whole number >= 1, got {value!r}")
+    return int(value)
+
+
+@attrs.frozen
+class SpringState:
+    """How one mount's spring is at some pose; the values of one spring of it, whatever ``count``."""
+
+    name: str
+    """Name of the mount."""
+    length: Any
+    """The spring's own length [m], or angle [rad]."""
+    load: Any
+    """Load of one spring [N, or N·m]; positive pulls the ends together."""
+    energy: Any
+    """Energy stored in one spring [J]."""
+    margin: Any
+    """Distance to the nearer end of the working range [m or rad]; negative outside, infinite without limits."""
+
+
+@attrs.frozen(field_transformer=units.named_fields)
+class SpringMount:
+    """One spring, or several equal ones side by side, along one path.
+
+    Raises
+    ------
+    InputError, InputTypeError, UnitError
+        An object that lacks a spring's or a path's methods, or a count that is not a whole
+        number from 1 on.
+    """
+
+    spring: Spring = attrs.field(converter=_spring)
+    """Any object with a spring's three methods."""
+    path: Path = attrs.field(converter=_path)
+    """Any object with a path's two methods."""
+    count: int = attrs.field(default=1, converter=_count, kw_only=True)
+    """How many equal springs act side by side, >= 1."""
+    rigid_length: Carrier = attrs.field(default=0.0, converter=units.metre, kw_only=True)
+    """Part of the path that does not stretch: cable, rod, hook extension [m].
+
+    The spring's own length is the path's length less this. Negative for a spring that is longer
+    than its path, as a compression spring seated behind a point is.
+    """
+    name: str | None = attrs.field(default=None, kw_only=True)
+    """What the mount is called in tables and errors; None for its number."""
+
+    def spring_length(self, linkage: Linkage, q: Carrier) -> Carrier:
+        """The spring's own length [m], or angle [rad]."""
+        length = self.path.length(linkage, q)
+        return length if _is_zero(self.rigid_length) else length - self.rigid_length
+
+    def ask(self, method: str, x: Carrier, **options: Any) -> Any:
+        """What one of the spring's methods gives at ``x``, which may be an array or a recorded variable.
+
+        Raises
+        ------
+        InputTypeError
+            The method can only do floats; its own errors on floats come through as they are.
+        """
+        try:
+            return getattr(self.spring, method)(x, **options)
+        except (TypeError, ValueError, AttributeError) as error:
+            if isinstance(x, float):
+                raise
+            raise InputTypeError(
+                f"{type(self.spring).__name__}.{method} must take arrays and recorded variables as well as floats, got "
+                f"{type(error).__name__}: {error}; use NumPy's functions or those of springpoise.carriers.namespace(x), "
+                "and where() instead of if"
+            ) from error
+
+    def torques(self, linkage: Linkage, q: Carrier) -> tuple[Carrier, ...]:
+        """For each joint, the torque that all springs of the mount exert [N·m]."""
+        load = self.ask("load", self.spring_length(linkage, q))
+        return tuple(-self.count * (load * gradient) for gradient in self.path.gradient(linkage, q))
+
+    def energy(self, linkage: Linkage, q: Carrier) -> Carrier:
+        """Energy stored in all springs of the mount [J]."""
+        return self.count * self.ask("energy", self.spring_length(linkage, q))
+
+    def friction_bands(self, linkage: Linkage, q: Carrier) -> tuple[Carrier, ...]:
+        """For each joint, the half-width of the torque band from pulleys and hysteresis [N·m]."""
+        x = self.spring_length(linkage, q)
+        load, hysteresis = self.ask("load", x), hysteresis_of(self.spring, x)
+        gradients = self.path.gradient(linkage, q)
+        rubbing = friction_gradient_of(self.path, linkage, q)
+        return tuple(
+            self.count * (_abs(load) * rub + _abs(hysteresis) * _abs(gradient))
+            for gradient, rub in zip(gradients, rubbing, strict=True)
+        )
+
+    def state(self, linkage: Linkage, q: Carrier, name: str) -> SpringState:
+        """Length, load, energy and margin of one spring of the mount."""
+        x = self.spring_length(linkage, q)
+        low, high = working_range_of(self.spring)
+        margin = namespace(x, low, high).minimum(x - low, high - x)
+        return SpringState(name, x, self.ask("load", x), self.ask("energy", x), margin)
+
+
+def _abs(value: Carrier) -> Carrier:
+    return namespace(value).abs(value)
+
+
+def _is_zero(value: Carrier) -> bool:
+    return isinstance(value, float) and value == 0.0
