@@ -1,0 +1,185 @@
+"""Best rates and preloads for springs whose mounts are fixed."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any, Literal
+
+import attrs
+import numpy as np
+
+from springpoise.balance.amounts import best_amounts
+from springpoise.balance.residual import Residual, poses_over, residual
+from springpoise.errors import InputError, InputTypeError, NoSolution
+from springpoise.mechanism import Mechanism, SpringMount
+from springpoise.springs import ScaledSpring
+from springpoise.tables import degrees, facts, number
+
+__all__ = ["SpringFit", "fit_springs"]
+
+ROUNDING = 1e-9
+"""A residual below this share of the peak gravity torque [1] is rounding, and no pose holds it down."""
+
+
+@attrs.frozen
+class SpringFit:
+    """Springs fitted to fixed mounts."""
+
+    mechanism: Mechanism
+    """The mechanism with the fitted springs; mounts that are best left out are gone."""
+    norm: str
+    """What was made least: ``"minimax"``, the worst residual, or ``"rms"``."""
+    residual: Residual
+    """What is left over the poses."""
+    left_out: tuple[str, ...]
+    """Names of the mounts that are best left out."""
+    settled: bool
+    """Whether the poses in which each spring pulls are those that the fit assumed."""
+    equal_poses: tuple[float, ...]
+    """For ``"minimax"``, the poses at which the residual reaches its worst [rad]; they hold it down."""
+
+    @property
+    def success(self) -> bool:
+        """Whether at least one spring helps and the fit settled."""
+        return self.settled and bool(self.mechanism.springs)
+
+    @property
+    def status(self) -> str:
+        """One sentence on what was found."""
+        if not self.mechanism.springs:
+            return "no spring at these mounts makes the residual smaller"
+        if not self.settled:
+            return "the poses in which the springs go slack did not settle; this is the best fit seen on the way"
+        best = "no other rates and preloads have a smaller worst residual" if self.norm == "minimax" else (
+            "no other rates and preloads have a smaller rms residual"
+        )
+        return best + " at these mounts and poses, as long as the same springs pull in the same poses"
+
+    def require(self) -> SpringFit:
+        """This result, or an error where it is none.
+
+        Raises
+        ------
+        NoSolution
+            No spring helps, or the fit did not settle.
+        """
+        if not self.success:
+            raise NoSolution(f"{self.status}; {self.residual}")
+        return self
+
+    def __str__(self) -> str:
+        rows = [("status", self.status), ("residual", str(self.residual))]
+        for index, mount in enumerate(self.mechanism.springs):
+            times = f"{mount.count} x " if mount.count > 1 else ""
+            rows.append((self.mechanism.mount_name(index), times + _described(mount)))
+        rows += [(name, "best left out") for name in self.left_out]
+        if self.equal_poses:
+            rows.append(("worst at", ", ".join(degrees(q) for q in self.equal_poses)))
+        return f"spring fit ({self.norm})\n" + facts(rows)
+
+
+def _described(mount: SpringMount) -> str:
+    spring: Any = mount.spring
+    if isinstance(spring, ScaledSpring):
+        return f"{number(spring.factor, '1')} times {type(spring.spring).__name__}"
+    parts = []
+    fields = attrs.fields_dict(type(spring)) if attrs.has(type(spring)) else {}
+    for name in ("rate", "initial_tension", "free_angle", "pull"):
+        if name in fields:
+            unit = fields[name].metadata.get("unit", "1")
+            parts.append(f"{name.replace('_', ' ')} {number(getattr(spring, name), unit)}")
+    if mount.rigid_length:
+        parts.append(f"rigid length {number(mount.rigid_length, 'm')}")
+    return f"{type(spring).__name__}: " + ", ".join(parts)
+
+
+def fit_springs(
+    mechanism: Mechanism,
+    *,
+    norm: Literal["minimax", "rms"] = "minimax",
+    over: Any = None,
+    preload: Literal["spring", "mount", "none"] = "spring",
+    fixed: Sequence[str | int] = (),
+    gravity: Any = None,
+) -> SpringFit:
+    """Best rates and preloads for fixed mounts: a linear program, or bounded least squares.
+
+    A torque is linear in a spring's rate and preload as long as the spring pulls in the same
+    poses; the fit is repeated until the poses it assumed are those that come out.
+
+    A spring of your own that has only its three methods is sized as a whole and comes back in a
+    :class:`~springpoise.springs.ScaledSpring`.
+
+    Parameters
+    ----------
+    mechanism
+        The mechanism with its mounts; the springs' present rates and preloads do not matter,
+        their free lengths do.
+    norm
+        ``"minimax"`` makes the worst residual least, ``"rms"`` its root mean square.
+    over
+        Poses [rad]; None for 181 over the travel.
+    preload
+        ``"spring"``: an extension spring's initial tension (from 0 to what zero free length needs)
+        and a torsion spring's free angle are chosen too. ``"mount"``: the springs' preload stays
+        and each mount's ``rigid_length`` is chosen. ``"none"``: rates alone.
+    fixed
+        Names or numbers (from 0 on) of the mounts whose springs stay as they are.
+    gravity
+        Gravity (gx, gy) [m/s²]; None for the mechanism's own.
+
+    Returns
+    -------
+    SpringFit
+
+    Raises
+    ------
+    InputError, InputTypeError
+        An unknown norm, preload or mount; no spring to fit.
+
+    Examples
+    --------
+    >>> import numpy as np
+    >>> from springpoise import (Arm, Body, ExtensionSpring, Mechanism, Point, SpringMount, Straight, balance)
+    >>> mech = Mechanism(
+    ...     Arm(Body("2 kg", (0.35, 0))),
+    ...     springs=[SpringMount(ExtensionSpring(1000, free_length=0.018),
+    ...                          Straight(Point("ground", (0, 0.10)), Point("arm", (0.08, 0))))],
+    ...     travel=("-60 deg", "60 deg"))
+    >>> fit = balance.fit_springs(mech, preload="none")
+    >>> round(fit.residual.worst_fraction, 4)
+    0.0965
+    """
+    if not isinstance(mechanism, Mechanism):
+        raise InputTypeError(f"mechanism must be a Mechanism, got {mechanism!r}")
+    if norm not in ("minimax", "rms"):
+        raise InputError(f"norm must be 'minimax' or 'rms', got {norm!r}")
+    if preload not in ("spring", "mount", "none"):
+        raise InputError(f"preload must be 'spring', 'mount' or 'none', got {preload!r}")
+    if gravity is not None:
+        mechanism = attrs.evolve(mechanism, gravity=gravity)
+    free = _free_mounts(mechanism, fixed)
+    q = poses_over(mechanism, over)
+    size = residual(mechanism.with_springs(()), q).peak_gravity_torque
+    found = best_amounts(mechanism, free, q, norm=norm, preload=preload)
+    left = np.abs(np.broadcast_to(found.mechanism.holding_torque(q), q.shape))
+    worst = np.max(left)
+    held = norm == "minimax" and worst > ROUNDING * size
+    equal = tuple(float(x) for x in q[left >= worst * (1 - 1e-6)]) if held else ()
+    return SpringFit(found.mechanism, norm, residual(found.mechanism, q), found.left_out, found.settled, equal[:8])
+
+
+def _free_mounts(mechanism: Mechanism, fixed: Sequence[str | int]) -> list[int]:
+    names = [mechanism.mount_name(i) for i in range(len(mechanism.springs))]
+    stay = set()
+    for which in [fixed] if isinstance(fixed, str | int) else fixed:
+        if isinstance(which, str) and which in names:
+            stay.add(names.index(which))
+        elif isinstance(which, int) and not isinstance(which, bool) and 0 <= which < len(names):
+            stay.add(which)
+        else:
+            raise InputError(f"fixed must name mounts of the mechanism ({', '.join(names) or 'it has none'}), got {which!r}")
+    free = [i for i in range(len(names)) if i not in stay]
+    if not free:
+        raise InputError(f"mechanism must have a spring to fit, got {len(names)} mounts of which {len(stay)} stay fixed")
+    return free

@@ -1,0 +1,233 @@
+"""The torque term of a control loop, and the plain functions that compute it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import Any, Literal, TypeAlias, overload
+
+import attrs
+import numpy as np
+
+from springpoise import units
+from springpoise.carriers import Carrier, namespace
+from springpoise.errors import InputError, InputTypeError
+from springpoise.feedforward.actuator import Actuator
+from springpoise.mechanism import Mechanism
+from springpoise.tape import Program, record
+
+__all__ = ["Feedforward"]
+
+Output: TypeAlias = Literal["torque", "current", "voltage"]
+"""What a compiled function computes: joint torque [N·m], motor current [A] or motor voltage [V]."""
+
+
+def _mechanism(value: Any) -> Mechanism:
+    if not isinstance(value, Mechanism):
+        raise InputTypeError(f"Feedforward.mechanism must be a Mechanism, got {value!r}")
+    return value
+
+
+def _actuator(value: Any) -> Actuator:
+    if not isinstance(value, Actuator):
+        raise InputTypeError(f"Feedforward.actuator must be an Actuator, got {value!r}")
+    return value
+
+
+@attrs.frozen
+class Feedforward:
+    """What the actuator must give at a pose: nothing is remembered from call to call.
+
+    Every method is a pure function of its arguments. A pose or velocity that is NaN or infinite
+    gives NaN, in these methods and in compiled functions alike, never a number that looks real;
+    check for it before the value goes to a drive.
+
+    Friction enters by the commanded direction: ``moving=+1`` adds the mechanism's friction band,
+    ``-1`` takes it off, ``0`` leaves it out.
+
+    Raises
+    ------
+    InputTypeError
+        Something else than a mechanism or an actuator.
+
+    Examples
+    --------
+    >>> from springpoise import Arm, Body, Feedforward, Friction, Mechanism
+    >>> mech = Mechanism(Arm(Body("2 kg", ("0.35 m", 0))), friction=Friction("0.3 N*m"))
+    >>> ff = Feedforward(mech)
+    >>> round(ff.torque(0.0), 6), round(ff.torque(0.0, moving=+1), 6)
+    (6.864655, 7.164655)
+    >>> fast = ff.compile(moving=+1)
+    >>> round(fast(0.0), 6)
+    7.164655
+    """
+
+    mechanism: Mechanism = attrs.field(converter=_mechanism)
+    """The mechanism as it is built."""
+    actuator: Actuator = attrs.field(factory=Actuator, converter=_actuator, kw_only=True)
+    """Motor and gear; by default none, with ratio 1, which is enough for torques."""
+
+    @overload
+    def torque(self, q: float | str, *, moving: Any = 0, gravity: Any = None) -> float: ...
+    @overload
+    def torque(self, q: Any, *, moving: Any = 0, gravity: Any = None) -> Any: ...
+    def torque(self, q: Any, *, moving: Any = 0, gravity: Any = None) -> Any:
+        """Torque that the actuator must add at the joint [N·m].
+
+        Parameters
+        ----------
+        q
+            Poses [rad], any shape.
+        moving
+            Direction of the commanded motion: +1 counter-clockwise, -1 clockwise, 0 at rest; a
+            number or an array that broadcasts against ``q``.
+        gravity
+            Gravity (gx, gy) on a tilted or accelerating base [m/s²]; None for the mechanism's own.
+
+        Raises
+        ------
+        InputError
+            A direction other than -1, 0, +1, or poses that look like degrees.
+        """
+        way = _direction(moving)
+        torque = self.mechanism.holding_torque(q, gravity)
+        if isinstance(way, float) and way == 0.0:
+            return torque
+        return torque + way * self.mechanism.friction_band(q, gravity)
+
+    @overload
+    def current(self, q: float | str, *, moving: Any = 0, gravity: Any = None) -> float: ...
+    @overload
+    def current(self, q: Any, *, moving: Any = 0, gravity: Any = None) -> Any: ...
+    def current(self, q: Any, *, moving: Any = 0, gravity: Any = None) -> Any:
+        """Motor current that holds or slowly moves the joint [A]; arguments as :meth:`torque`.
+
+        Raises
+        ------
+        InputError
+            As :meth:`torque`, or the actuator has no motor.
+        """
+        way = _direction(moving)
+        return self.actuator.current(self.torque(q, moving=way, gravity=gravity), moving=way)
+
+    @overload
+    def voltage(self, q: float | str, *, velocity: float | str, moving: Any = None, gravity: Any = None) -> float: ...
+    @overload
+    def voltage(self, q: Any, *, velocity: Any, moving: Any = None, gravity: Any = None) -> Any: ...
+    def voltage(self, q: Any, *, velocity: Any, moving: Any = None, gravity: Any = None) -> Any:
+        """Motor voltage at a pose and a steady velocity [V].
+
+        Parameters
+        ----------
+        q
+            Poses [rad], any shape.
+        velocity
+            Rate of the joint [rad/s], counter-clockwise positive; broadcasts against ``q``.
+        moving
+            Direction of the commanded motion; None for that of ``velocity``.
+        gravity
+            As in :meth:`torque`.
+
+        Raises
+        ------
+        InputError
+            As :meth:`current`.
+        """
+        rate = _velocity(velocity)
+        way = namespace(rate).sign(rate) if moving is None else _direction(moving)
+        torque = self.mechanism.holding_torque(q, gravity)
+        with np.errstate(invalid="ignore"):
+            torque = torque + way * self.mechanism.friction_band(q, gravity)
+            not_finite = 0.0 * rate  # NaN for an infinite velocity, which would else give infinite volts
+            return self.actuator.voltage(torque, velocity=rate, moving=way) + not_finite
+
+    def program(self, output: Output = "torque", *, moving: int = 0, gravity_per_call: bool = False) -> Program:
+        """The computation as a recorded straight-line program; arguments as :meth:`compile`."""
+        if output not in ("torque", "current", "voltage"):
+            raise InputError(f"output must be 'torque', 'current' or 'voltage', got {output!r}")
+        way = _direction(moving)
+        if not isinstance(way, float):
+            raise InputTypeError(f"moving must be one of -1, 0, +1 for a compiled function, got {moving!r}")
+        inputs = ["q"] if self.mechanism.linkage.joint_count == 1 else [
+            f"q{joint}" for joint in range(self.mechanism.linkage.joint_count)
+        ]
+        joints = len(inputs)
+        if output == "voltage":
+            inputs.append("velocity")
+        if gravity_per_call:
+            inputs += ["gx", "gy"]
+
+        def formula(*values: Carrier) -> Any:
+            q = values[0] if joints == 1 else tuple(values[:joints])
+            gravity = tuple(values[-2:]) if gravity_per_call else None
+            if output == "voltage":
+                return self.voltage(q, velocity=values[joints], gravity=gravity)
+            if output == "current":
+                return self.current(q, moving=way, gravity=gravity)
+            return self.torque(q, moving=way, gravity=gravity)
+
+        return record(formula, inputs=tuple(inputs))
+
+    def compile(
+        self,
+        output: Output = "torque",
+        *,
+        moving: int = 0,
+        arrays: bool = False,
+        gravity_per_call: bool = False,
+    ) -> Callable[..., Any]:
+        """A plain function for a control loop, or a blocked one for many poses.
+
+        The function takes joint angles in rad and nothing else is converted or checked: angles in
+        degrees give a wrong torque. NaN or infinity, in any argument, gives NaN.
+
+        Parameters
+        ----------
+        output
+            ``"torque"`` [N·m] and ``"current"`` [A]: a function of ``q``. ``"voltage"`` [V]: a
+            function of ``q`` and ``velocity``, with friction by the sign of the velocity.
+        moving
+            Direction of the commanded motion that is built in: +1, -1, or 0 for at rest.
+        arrays
+            False for floats in, float out. True for NumPy arrays of any shape, computed in
+            blocks that stay in the cache.
+        gravity_per_call
+            True for two more arguments, ``gx`` and ``gy`` [m/s²], for a tilted or accelerating base.
+
+        Returns
+        -------
+        function
+            ``f(q)``, ``f(q, velocity)``, each with ``gx, gy`` behind where asked for.
+
+        Raises
+        ------
+        InputError, InputTypeError
+            An unknown output or direction, a missing motor, or a spring or path whose formulas
+            cannot be recorded.
+        """
+        program = self.program(output, moving=moving, gravity_per_call=gravity_per_call)
+        return program.numpy_function() if arrays else program.python_function()
+
+
+def _direction(moving: Any) -> Any:
+    """-1, 0 or +1 as a float, or an array of them."""
+    if isinstance(moving, int | float | np.integer | np.floating) and not isinstance(moving, bool):
+        if moving in (-1, 0, 1):
+            return float(moving)
+    elif isinstance(moving, np.ndarray | list | tuple):
+        ways = np.asarray(moving)
+        if ways.dtype.kind in "iuf" and np.all(np.isin(ways, (-1, 0, 1))):
+            return ways.astype(np.float64)
+    elif hasattr(type(moving), "__array_namespace__"):
+        return moving
+    raise InputError(f"moving must be -1, 0 or +1, got {moving!r}")
+
+
+def _velocity(velocity: Any) -> Any:
+    if isinstance(velocity, float) or (
+        hasattr(type(velocity), "__array_namespace__") and not isinstance(velocity, np.ndarray)
+    ):
+        return velocity
+    if isinstance(velocity, np.ndarray) and velocity.dtype.kind in "iuf":
+        return velocity.astype(np.float64)
+    return units.radian_per_second(velocity, "velocity")
+
