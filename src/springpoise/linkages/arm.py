@@ -44,7 +44,7 @@ class Arm:
     """
 
     bodies: tuple[Body, ...] = attrs.field(converter=_bodies)
-    """The bodies on the arm: one :class:`Body` or a sequence of them."""
+    """The bodies on the arm: one ``Body`` or a sequence of them."""
     length: Carrier | None = attrs.field(
         default=None, converter=units.optional_metre, validator=units.positive, kw_only=True
     )
@@ -132,7 +132,7 @@ class Arm:
         return px * c - py * s, px * s + py * c
 
     def jacobian(self, point: Point, q: Carrier) -> tuple[tuple[Carrier, Carrier], ...]:
-        """Derivative of the position by the joint angle: ``((dx, dy),)`` [m/rad]; arguments as :meth:`position`."""
+        """Derivative of the position by the joint angle: ``((dx, dy),)`` [m/rad]; arguments as ``position``."""
         if not self._on_arm(point):
             return ((0.0, 0.0),)
         x, y = self.position(point, q)

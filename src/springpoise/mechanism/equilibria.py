@@ -111,7 +111,7 @@ def _zeros_at_samples(angles: NDArray[np.float64], sides: NDArray[np.float64]) -
     for i in np.flatnonzero(sides == 0.0):
         before = sides[i - 1] if i > 0 else -sides[i + 1]
         behind = sides[i + 1] if i < last else -sides[i - 1]
-        if before != 0.0 or behind != 0.0:
+        if before != 0.0 or behind != 0.0 or i in (0, last):
             yield Equilibrium(float(angles[i]), bool(before > 0 > behind))
 
 

@@ -140,7 +140,7 @@ class Mechanism:
     """
 
     linkage: Linkage = attrs.field(converter=_linkage)
-    """Where the bodies are and what they weigh, such as an :class:`~springpoise.linkages.Arm`."""
+    """Where the bodies are and what they weigh, such as an ``Arm``."""
     springs: tuple[SpringMount, ...] = attrs.field(default=(), converter=_mounts, kw_only=True)
     """The spring mounts: one or a sequence of them."""
     friction: Friction = attrs.field(factory=Friction, converter=_friction, kw_only=True)
@@ -215,7 +215,9 @@ class Mechanism:
         for moved in range(count):
             seeded = [Dual(angle, 1.0 if joint == moved else 0.0) for joint, angle in enumerate(joints)]
             torques = self._holding_torques(seeded[0] if count == 1 else tuple(seeded), gravity)
-            columns.append(_joined([t.slope if isinstance(t, Dual) else 0.0 * joints[0] for t in torques]))
+            # A torque that is NaN has no slope, even where NaN entered the sum as a constant.
+            slopes = [t.slope + 0.0 * t.value if isinstance(t, Dual) else 0.0 * (t + joints[0]) for t in torques]
+            columns.append(_joined(slopes))
         return columns[0] if count == 1 else namespace(*columns).stack(columns, axis=-1)
 
     @overload

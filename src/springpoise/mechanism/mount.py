@@ -12,18 +12,13 @@ from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputTypeError
 from springpoise.linkages.protocol import Linkage
 from springpoise.paths.protocol import Path, friction_gradient_of
-from springpoise.springs.protocol import Spring, hysteresis_of, working_range_of
+from springpoise.springs.protocol import Spring, hysteresis_of, spring_like, working_range_of
 
 __all__ = ["SpringMount", "SpringState"]
 
 
 def _spring(value: Any) -> Any:
-    missing = [name for name in ("load", "stiffness", "energy") if not callable(getattr(value, name, None))]
-    if missing or isinstance(value, type):
-        what = f"the class {value.__name__}, not an object of it" if isinstance(value, type) else repr(value)
-        lacking = f"; it lacks {', '.join(missing)}" if missing else ""
-        raise InputTypeError(f"SpringMount.spring must have load, stiffness and energy methods, got {what}{lacking}")
-    return value
+    return spring_like(value, "SpringMount.spring")
 
 
 def _path(value: Any) -> Any:

@@ -39,7 +39,7 @@ class Straight:
     Raises
     ------
     InputTypeError
-        An end that is not a :class:`Point`.
+        An end that is not a ``Point``.
 
     Examples
     --------

@@ -1,7 +1,7 @@
 """Springs: each knows only its own length (or angle) and what it does there.
 
 Positive load pulls the ends together. A spring of your own needs no base class: any object with
-``load(x)``, ``stiffness(x)`` and ``energy(x)`` works (see :class:`Spring`).
+``load(x)``, ``stiffness(x)`` and ``energy(x)`` works (see ``Spring``).
 """
 
 from springpoise.springs.compression import CompressionSpring

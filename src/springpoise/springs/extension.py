@@ -69,7 +69,7 @@ class ExtensionSpring:
     def load(self, x: Carrier) -> Carrier:
         """Load at length ``x`` [N], shape of ``x``; positive pulls the ends together, 0 when slack."""
         pull = self.initial_tension + self.rate * (x - self.free_length)
-        return namespace(x, pull).where(x > self.free_length, pull, 0.0)
+        return namespace(x, pull).where(x <= self.free_length, 0.0, pull)  # NaN stays NaN
 
     def stiffness(self, x: Carrier) -> Carrier:
         """Slope of the load at ``x`` [N/m], 0 when slack."""
@@ -130,11 +130,11 @@ class ExtensionSpring:
         effective free length stays between 0 and ``free_length``.
         """
         xp = namespace(x)
-        pulls = x > self.free_length
-        opened = xp.where(pulls, x - self.free_length, 0.0)
+        slack = x <= self.free_length
+        opened = xp.where(slack, 0.0, x - self.free_length)
         if preload:
-            return LoadTerms(0.0 * x, (opened, xp.where(pulls, x, 0.0)), (False, False))
-        return LoadTerms(xp.where(pulls, self.initial_tension, 0.0), (opened,), (False,))
+            return LoadTerms(0.0 * x, (opened, xp.where(slack, 0.0, x)), (False, False))
+        return LoadTerms(xp.where(slack, 0.0, self.initial_tension), (opened,), (False,))
 
     def tuned(self, amounts: tuple[float, ...], *, preload: bool) -> ExtensionSpring:
         """The spring with these amounts of its unknowns; ``longest`` is kept."""

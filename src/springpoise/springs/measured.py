@@ -69,7 +69,9 @@ class MeasuredSpring:
         for name in ("loads", "unloading"):
             branch = getattr(self, name)
             if branch is not None and np.shape(branch) != lengths.shape:
-                raise InputError(f"MeasuredSpring.{name} must be of shape {lengths.shape} like lengths, got {np.shape(branch)}")
+                raise InputError(
+                    f"MeasuredSpring.{name} must be of shape {lengths.shape} like lengths, got {np.shape(branch)}"
+                )
         if self.unloading is not None:
             above = np.flatnonzero(np.asarray(self.unloading) > np.asarray(self.loads))
             if above.size:
@@ -81,7 +83,9 @@ class MeasuredSpring:
 
     @functools.cached_property
     def _curve(self) -> Lookup:
-        return _shape_preserving(self.lengths, self.loads if self.unloading is None else 0.5 * (self.loads + self.unloading))
+        return _shape_preserving(
+            self.lengths, self.loads if self.unloading is None else 0.5 * (self.loads + self.unloading)
+        )
 
     @functools.cached_property
     def _slope(self) -> Lookup:

@@ -6,8 +6,9 @@ import math
 from typing import Any, NamedTuple, Protocol
 
 from springpoise.carriers import Carrier
+from springpoise.errors import InputTypeError
 
-__all__ = ["FittableSpring", "LoadTerms", "Spring", "hysteresis_of", "working_range_of"]
+__all__ = ["FittableSpring", "LoadTerms", "Spring", "hysteresis_of", "spring_like", "working_range_of"]
 
 
 class Spring(Protocol):
@@ -67,3 +68,13 @@ def working_range_of(spring: Spring) -> tuple[float, float]:
     """The spring's own working range, or an unlimited one where it states none."""
     own = getattr(spring, "working_range", None)
     return (-math.inf, math.inf) if own is None else own
+
+
+def spring_like(value: Any, name: str) -> Any:
+    """``value``, once it is known to have a spring's three methods."""
+    missing = [method for method in ("load", "stiffness", "energy") if not callable(getattr(value, method, None))]
+    if missing or isinstance(value, type):
+        what = f"the class {value.__name__}, not an object of it" if isinstance(value, type) else repr(value)
+        lacking = f"; it lacks {', '.join(missing)}" if missing else ""
+        raise InputTypeError(f"{name} must have load, stiffness and energy methods, got {what}{lacking}")
+    return value

@@ -2,13 +2,19 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import attrs
 
 from springpoise import units
 from springpoise.carriers import Carrier
-from springpoise.springs.protocol import LoadTerms, Spring, hysteresis_of, working_range_of
+from springpoise.springs.protocol import LoadTerms, Spring, hysteresis_of, spring_like, working_range_of
 
 __all__ = ["ScaledSpring"]
+
+
+def _spring(value: Any) -> Any:
+    return spring_like(value, "ScaledSpring.spring")
 
 
 @attrs.frozen(field_transformer=units.named_fields)
@@ -19,11 +25,11 @@ class ScaledSpring:
 
     Raises
     ------
-    InputError
-        A factor that is not positive and finite.
+    InputError, InputTypeError
+        A factor that is not positive and finite, or an object that lacks a spring's methods.
     """
 
-    spring: Spring
+    spring: Spring = attrs.field(converter=_spring)
     """The spring that is scaled."""
     factor: Carrier = attrs.field(converter=units.number, validator=units.positive)
     """How many times as strong [1], > 0; need not be whole."""

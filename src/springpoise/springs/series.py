@@ -105,7 +105,9 @@ def _springs(value: Any) -> tuple[Any, ...]:
     for spring in springs:
         for name, field in attrs.fields_dict(type(spring)).items() if attrs.has(type(spring)) else ():
             if "unit" in field.metadata and np.ndim(getattr(spring, name)) and not hasattr(spring, "lengths"):
-                raise InputError(f"SeriesSprings.springs must have single values, got an array as {type(spring).__name__}.{name}")
+                raise InputError(
+                    f"SeriesSprings.springs must have single values, got an array as {type(spring).__name__}.{name}"
+                )
     return springs
 
 
@@ -184,7 +186,9 @@ class SeriesSprings:
         for x in lengths:
             load = float(self._table(float(x)))
             each = [_length_at(s, law, load) for s, law in zip(self.springs, laws, strict=True)]
-            compliances = [1.0 / k if (k := float(s.stiffness(at))) > 0 else 0.0 for s, at in zip(self.springs, each, strict=True)]
+            compliances = [
+                1.0 / k if (k := float(s.stiffness(at))) > 0 else 0.0 for s, at in zip(self.springs, each, strict=True)
+            ]
             widths = [float(hysteresis_of(s, at)) for s, at in zip(self.springs, each, strict=True)]
             total = sum(compliances)
             bands.append(sum(w * c for w, c in zip(widths, compliances, strict=True)) / total if total else 0.0)
@@ -230,7 +234,9 @@ def _tabulated(springs: Sequence[Any], laws: Sequence[_Law]) -> Lookup:
 
 def _pieces(lengths: Sequence[float], loads: Sequence[float]) -> Lookup:
     """Straight pieces; where the length stands still the load jumps, and the upper load counts."""
-    kept = [(x, f) for i, (x, f) in enumerate(zip(lengths, loads, strict=True)) if i + 1 == len(loads) or lengths[i + 1] > x]
+    kept = [
+        (x, f) for i, (x, f) in enumerate(zip(lengths, loads, strict=True)) if i + 1 == len(loads) or lengths[i + 1] > x
+    ]
     xs, fs = np.array([x for x, _ in kept]), np.array([f for _, f in kept])
     return Lookup(xs, np.stack([fs[:-1], np.diff(fs) / np.diff(xs)], axis=1))
 

@@ -19,7 +19,9 @@ def warmed(temperature: ScalarLike, slope: ScalarLike, reference: ScalarLike, na
     change = units.per_kelvin(slope, name)
     factor = 1.0 + change * (units.kelvin(temperature, "temperature") - units.kelvin(reference, "reference"))
     if isinstance(factor, float) and not factor > 0:
-        raise InputError(f"{name} must leave a load at that temperature, got {change:g} 1/K, which leaves {factor:g} of it")
+        raise InputError(
+            f"{name} must leave a load at that temperature, got {change:g} 1/K, which leaves {factor:g} of it"
+        )
     return factor
 
 

@@ -6,7 +6,7 @@ import attrs
 import numpy as np
 
 from springpoise import units
-from springpoise.carriers import Carrier
+from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError
 from springpoise.springs.protocol import LoadTerms
 from springpoise.springs.service import ROOM_TEMPERATURE, remaining, warmed
@@ -40,10 +40,16 @@ class TorsionSpring:
     """Angle with no load [rad]."""
     working_range: tuple[float, float] | None = attrs.field(default=None, converter=units.optional_radian_pair)
     """Permissible angles (lowest, highest) [rad]; None for not given, which is no limit."""
+    winding_friction: Carrier = attrs.field(
+        default=0.0, converter=units.number, validator=units.not_negative, kw_only=True
+    )
+    """Half-width of the band between winding and unwinding over the load [1], from 0 to below 1."""
 
     def __attrs_post_init__(self) -> None:
         if self.working_range is not None and not np.all(np.asarray(self.working_range[0] < self.working_range[1])):
             raise InputError(f"TorsionSpring.working_range must be (lower, higher) rad, got {self.working_range}")
+        if np.any(np.asarray(self.winding_friction >= 1.0)):
+            raise InputError(f"TorsionSpring.winding_friction must be < 1, got {self.winding_friction}")
 
     @property
     def effective_free_length(self) -> Carrier:
@@ -64,8 +70,9 @@ class TorsionSpring:
         return 0.5 * self.rate * wound * wound
 
     def hysteresis(self, x: Carrier) -> Carrier:
-        """Half-width of the loading band [N·m]: zero, coils are taken to be apart."""
-        return 0.0 * x
+        """Half-width of the loading band [N·m]: ``winding_friction`` times the size of the load."""
+        turned = self.winding_friction * self.load(x)
+        return namespace(turned).abs(turned)
 
     def at_temperature(
         self, temperature: ScalarLike, *, rate_slope: ScalarLike, reference: ScalarLike = ROOM_TEMPERATURE

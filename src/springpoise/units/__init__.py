@@ -10,6 +10,7 @@ from __future__ import annotations
 from springpoise.units.convert import DEGREES_SUSPECTED as DEGREES_SUSPECTED
 from springpoise.units.convert import QuantityLike as QuantityLike
 from springpoise.units.convert import ScalarLike as ScalarLike
+from springpoise.units.convert import acceleration as acceleration
 from springpoise.units.convert import acceleration_pair as acceleration_pair
 from springpoise.units.convert import ampere as ampere
 from springpoise.units.convert import joule as joule
@@ -19,6 +20,8 @@ from springpoise.units.convert import kilogram_per_cubic_metre as kilogram_per_c
 from springpoise.units.convert import metre as metre
 from springpoise.units.convert import metre_pair as metre_pair
 from springpoise.units.convert import metre_per_second_squared as metre_per_second_squared
+from springpoise.units.convert import metre_place as metre_place
+from springpoise.units.convert import metre_triple as metre_triple
 from springpoise.units.convert import newton as newton
 from springpoise.units.convert import newton_metre as newton_metre
 from springpoise.units.convert import newton_metre_per_ampere as newton_metre_per_ampere
@@ -36,8 +39,11 @@ from springpoise.units.convert import poses as poses
 from springpoise.units.convert import radian as radian
 from springpoise.units.convert import radian_pair as radian_pair
 from springpoise.units.convert import radian_per_second as radian_per_second
+from springpoise.units.convert import radian_triple as radian_triple
+from springpoise.units.convert import radians as radians
 from springpoise.units.convert import scalar_si as scalar_si
 from springpoise.units.convert import second as second
+from springpoise.units.convert import triple as triple
 from springpoise.units.fields import comparable as comparable
 from springpoise.units.fields import fraction as fraction
 from springpoise.units.fields import named_fields as named_fields

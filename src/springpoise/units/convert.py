@@ -231,6 +231,11 @@ def radian(value: ScalarLike, name: str = "value") -> Any:
     return angle
 
 
+def radians(value: ScalarLike, name: str = "value") -> Any:
+    """Angles in rad of which there may be many turns, such as those of a drum."""
+    return scalar_si(value, "rad", name)
+
+
 def _beyond_two_turns(seen: float, name: str, *, guess: bool) -> InputError:
     hint = f"; degrees? write '{seen:g} deg'" if guess else ""
     return InputError(f"{name} must be within two turns, ±{DEGREES_SUSPECTED:.4g} rad, got {seen:g}{hint}")
@@ -274,7 +279,44 @@ def pair(value: Any, unit: str, name: str) -> tuple[Any, Any]:
 
 
 def _two(value: Any, unit: str, name: str) -> tuple[Any, Any]:
-    if hasattr(value, "m_as"):  # a quantity that holds both: the unit is stated, so no degrees are suspected
+    items = _several(value, unit, name, (2,))
+    return items[0], items[1]
+
+
+def triple(value: Any, unit: str, name: str) -> tuple[Any, Any, Any]:
+    """Three values of one unit, each a number, a string or a quantity."""
+    items = _several(value, unit, name, (3,))
+    return scalar_si(items[0], unit, name), scalar_si(items[1], unit, name), scalar_si(items[2], unit, name)
+
+
+def metre_triple(value: Any, name: str = "value") -> tuple[Any, Any, Any]:
+    """A point (x, y, z) in m."""
+    return triple(value, "m", name)
+
+
+def radian_triple(value: Any, name: str = "value") -> tuple[Any, Any, Any]:
+    """Three bounded angles in rad."""
+    items = _several(value, "rad", name, (3,))
+    return radian(items[0], name), radian(items[1], name), radian(items[2], name)
+
+
+def metre_place(value: Any, name: str = "value") -> tuple[Any, ...]:
+    """A point in m: (x, y) in a plane, (x, y, z) in space."""
+    return tuple(scalar_si(item, "m", name) for item in _several(value, "m", name, (2, 3)))
+
+
+def acceleration(value: Any, name: str = "value") -> tuple[Any, ...]:
+    """An acceleration in m/s²: (x, y) in a plane, (x, y, z) in space."""
+    return tuple(scalar_si(item, "m/s**2", name) for item in _several(value, "m/s**2", name, (2, 3)))
+
+
+_TUPLES = {2: "a pair", 3: "three values"}
+
+
+def _several(value: Any, unit: str, name: str, counts: tuple[int, ...]) -> list[Any]:
+    """The items of a value that holds one of these numbers of them."""
+    rule = " or ".join(_TUPLES[count] for count in counts)
+    if hasattr(value, "m_as"):  # a quantity that holds them all: the unit is stated, so no degrees are suspected
         value = _magnitude(value, unit, name)
     try:
         if isinstance(value, str | bytes | dict | set | frozenset):  # these have no order, or no numbers
@@ -282,11 +324,11 @@ def _two(value: Any, unit: str, name: str) -> tuple[Any, Any]:
         items = list(value)
     except TypeError:
         raise InputTypeError(
-            f"{name} must be a pair in {unit}, got {reprlib.repr(value)} of type {type(value).__name__}"
+            f"{name} must be {rule} in {unit}, got {reprlib.repr(value)} of type {type(value).__name__}"
         ) from None
-    if len(items) != 2:
-        raise InputError(f"{name} must be a pair in {unit}, got {len(items)} values: {reprlib.repr(value)}")
-    return items[0], items[1]
+    if len(items) not in counts:
+        raise InputError(f"{name} must be {rule} in {unit}, got {len(items)} values: {reprlib.repr(value)}")
+    return items
 
 
 def poses(q: Any, name: str = "q") -> Any:

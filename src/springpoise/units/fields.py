@@ -10,6 +10,7 @@ import numpy as np
 
 from springpoise.errors import InputError
 from springpoise.units.convert import (
+    acceleration,
     acceleration_pair,
     ampere,
     joule,
@@ -19,6 +20,8 @@ from springpoise.units.convert import (
     metre,
     metre_pair,
     metre_per_second_squared,
+    metre_place,
+    metre_triple,
     newton,
     newton_metre,
     newton_metre_per_ampere,
@@ -34,6 +37,8 @@ from springpoise.units.convert import (
     radian,
     radian_pair,
     radian_per_second,
+    radian_triple,
+    radians,
     second,
 )
 
@@ -58,6 +63,11 @@ _UNIT_OF: dict[Callable[..., Any], str] = {
     number: "1",
     radian: "rad",
     metre_pair: "m",
+    metre_place: "m",
+    metre_triple: "m",
+    radian_triple: "rad",
+    radians: "rad",
+    acceleration: "m/s**2",
     acceleration_pair: "m/s**2",
     radian_pair: "rad",
     optional_metre: "m",

@@ -13,7 +13,8 @@ __all__ = ["angle_hint", "described", "parse", "quantity", "spelling_hint"]
 
 _LONGEST_TEXT = 100
 _NUMBER_AND_UNIT = re.compile(
-    r"\s*(?P<number>[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d{1,3})?)\s*(?P<unit>(?:(?<=\s)1\s*/|[^\d\s+\-.]).*)?\s*", re.ASCII
+    r"\s*(?P<number>[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d{1,3})?)\s*(?P<unit>(?:(?<=\s)1\s*/|[^\d\s+\-.]).*)?\s*",
+    re.ASCII,
 )
 _UNIT_TEXT = re.compile(r"[A-Za-zµμ°%Ω/*·⋅^()_ \-0-9²³¹⁻]{1,40}")
 _POWER = re.compile(r"(?:\*\*|\^)\s*(?:-?\d|\(-?\d\))(?!\s*(?:\*\*|\^|[\d.]))")
