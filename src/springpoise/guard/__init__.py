@@ -1,0 +1,80 @@
+"""Guard: mechanism files, limits that they state, and what changed between two versions of one.
+
+A ``.poise.toml`` file describes an arm, its springs, its limits and, where something is still to be
+found, how. Everything that has a unit is a text with that unit, ``"0.12 m"``; plain numbers are pure
+numbers and counts. The keys of a table are the fields of the class that it describes.
+
+```text
+schema = 1        version of the format
+title, description
+[gravity]         latitude and height, or magnitude, or components; tilt. Standard gravity without.
+[arm]             Arm: length; [[arm.bodies]] Body: name, mass, com
+[travel]          from, to. A full turn without.
+[friction]        Friction: coulomb, pivot_friction, pivot_radius
+[[springs]]       SpringMount: name, count, rigid_length
+[springs.spring]  kind = "extension", "zero length", "compression", "torsion" or "constant force",
+                  and the fields of that class
+[springs.path]    kind = "straight": first, last. "cable": along = [point, disc or point ..., point].
+                  "joint travel": joint, ratio. A point is { body = "ground", at = ["0 m", "0.2 m"] },
+                  a disc { centre = {a point}, radius = "15 mm", turn = "cw" } with its friction.
+[[payloads]]      Payload: name, mass, at; none of them is on the arm until a limit names it
+[actuator]        Actuator: ratio, efficiency, sign, zero; [actuator.motor] Motor
+[[limits]]        what = "residual torque", "holding torque", "stretch", "stored energy",
+                  "balance angles", "motor current" or "pivot load", and the fields of that class
+[design]          method = "stock", "sine" or "fit", and the fields of that class. With "fit", what is
+                  to be found is written "open" in the springs: rate or pull, and either
+                  initial_tension and free_angle, or rigid_length.
+```
+"""
+
+from springpoise.guard.amounts import OfPeak
+from springpoise.guard.check import CheckReport, check
+from springpoise.guard.compare import Change, Comparison, compare
+from springpoise.guard.document import Payload, PoiseFile
+from springpoise.guard.files import dump, load, save
+from springpoise.guard.limits import (
+    BalanceAngles,
+    HoldingTorque,
+    Limit,
+    MotorCurrent,
+    PivotLoad,
+    ResidualTorque,
+    StoredEnergy,
+    Stretch,
+)
+from springpoise.guard.openings import OpenSpring
+from springpoise.guard.requests import DesignRequest, FitRequest, SineRequest, Steps, StockRequest
+from springpoise.guard.solve import Design, design
+from springpoise.guard.verdict import Case, LimitVerdict
+
+__all__ = [
+    "BalanceAngles",
+    "Case",
+    "Change",
+    "CheckReport",
+    "Comparison",
+    "Design",
+    "DesignRequest",
+    "FitRequest",
+    "HoldingTorque",
+    "Limit",
+    "LimitVerdict",
+    "MotorCurrent",
+    "OfPeak",
+    "OpenSpring",
+    "Payload",
+    "PivotLoad",
+    "PoiseFile",
+    "ResidualTorque",
+    "SineRequest",
+    "Steps",
+    "StockRequest",
+    "StoredEnergy",
+    "Stretch",
+    "check",
+    "compare",
+    "design",
+    "dump",
+    "load",
+    "save",
+]

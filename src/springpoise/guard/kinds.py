@@ -1,0 +1,60 @@
+"""Which names files use for which classes. A new spring, path, linkage or limit is a line here."""
+
+from __future__ import annotations
+
+from springpoise.guard.limits import (
+    BalanceAngles,
+    HoldingTorque,
+    Limit,
+    MotorCurrent,
+    PivotLoad,
+    ResidualTorque,
+    StoredEnergy,
+    Stretch,
+)
+from springpoise.guard.models import Family, Registry
+from springpoise.guard.requests import DesignRequest, FitRequest, SineRequest, StockRequest
+from springpoise.linkages import Arm
+from springpoise.paths import Cable, JointTravel, Straight
+from springpoise.paths.protocol import Path
+from springpoise.springs import (
+    CompressionSpring,
+    ConstantForceSpring,
+    ExtensionSpring,
+    TorsionSpring,
+    ZeroLengthSpring,
+)
+from springpoise.springs.protocol import Spring
+
+__all__ = ["DESIGNS", "LIMITS", "LINKAGES", "PATHS", "REGISTRY", "SPRINGS"]
+
+LINKAGES: dict[str, type] = {"arm": Arm}
+"""Sections of which a file has exactly one, and the linkage that each describes."""
+
+SPRINGS = Family(
+    "kind",
+    "spring",
+    {
+        "extension": ExtensionSpring,
+        "zero length": ZeroLengthSpring,
+        "compression": CompressionSpring,
+        "torsion": TorsionSpring,
+        "constant force": ConstantForceSpring,
+    },
+)
+
+PATHS = Family("kind", "path", {"straight": Straight, "cable": Cable, "joint travel": JointTravel})
+
+LIMITS = Family(
+    "what",
+    "limit",
+    {
+        cls.what: cls
+        for cls in (ResidualTorque, HoldingTorque, Stretch, StoredEnergy, BalanceAngles, MotorCurrent, PivotLoad)
+    },
+)
+
+DESIGNS = Family("method", "design", {cls.method: cls for cls in (StockRequest, SineRequest, FitRequest)})
+
+REGISTRY: Registry = {Spring: SPRINGS, Path: PATHS, Limit: LIMITS, DesignRequest: DESIGNS}
+"""The family for each type of a field that says only what it is for."""

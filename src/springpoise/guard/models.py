@@ -1,0 +1,259 @@
+"""Tables of a file to model objects and back, whatever the model.
+
+The keys of a table are the fields of an attrs class. A field with a unit is a text with a unit, a
+field whose type is another model is a table, a field whose type is a protocol is a table that
+names its kind. So a new spring or path needs one line in a registry and nothing here.
+"""
+
+from __future__ import annotations
+
+import functools
+import inspect
+import re
+import types
+import typing
+from collections.abc import Iterable, Mapping
+from typing import Any, NamedTuple
+
+import attrs
+
+from springpoise.errors import InputError, SpringpoiseError
+from springpoise.guard.amounts import written
+from springpoise.guard.place import Place, nearest
+
+__all__ = ["Family", "Registry", "fields_of", "read_kind", "read_model", "write_model"]
+
+
+class Family(NamedTuple):
+    """Models of which a table names one."""
+
+    key: str
+    """The key that names it."""
+    noun: str
+    """What they are called in messages."""
+    kinds: Mapping[str, type]
+    """Names and classes."""
+
+
+Registry: typing.TypeAlias = "Mapping[Any, Family]"
+"""The family for each protocol that may stand as the type of a field."""
+
+
+class _Field(NamedTuple):
+    key: str
+    attribute: attrs.Attribute[Any]
+    hints: tuple[Any, ...]
+    unit: str | None
+    required: bool
+
+
+def fields_of(cls: type) -> tuple[_Field, ...]:
+    """The fields of a model, with the key each has in a file and the types it may have."""
+    return _fields_of(cls)
+
+
+@functools.cache
+def _fields_of(cls: Any) -> tuple[_Field, ...]:
+    hints = typing.get_type_hints(cls)
+    found = []
+    for attribute in attrs.fields(cls):
+        hint = hints.get(attribute.name, Any)
+        union = isinstance(hint, types.UnionType) or typing.get_origin(hint) is typing.Union
+        options = typing.get_args(hint) if union else (hint,)
+        found.append(
+            _Field(
+                key=attribute.metadata.get("key", attribute.name),
+                attribute=attribute,
+                hints=tuple(option for option in options if option is not type(None)),
+                unit=attribute.metadata.get("unit"),
+                required=attribute.default is attrs.NOTHING,
+            )
+        )
+    return tuple(found)
+
+
+# ------------------------------------------------------------------------------------------------
+# reading
+
+
+def read_kind(family: Family, value: Any, place: Place, registry: Registry) -> Any:
+    """The model of which a table names the kind."""
+    table = place.table(value)
+    if family.key not in table:
+        raise place.error(f"must have the key {family.key}, one of {', '.join(family.kinds)}")
+    kind = place.key(family.key).text(table[family.key])
+    if kind not in family.kinds:
+        raise place.key(family.key).error(
+            f"must be a kind of {family.noun}, got {Place.shown(kind)}{nearest(kind, family.kinds)}"
+        )
+    rest = {key: item for key, item in table.items() if key != family.key}
+    return read_model(family.kinds[kind], rest, place, registry)
+
+
+def read_model(cls: type, value: Any, place: Place, registry: Registry) -> Any:
+    """An object of ``cls`` from a table whose keys are its fields.
+
+    Raises
+    ------
+    PoiseFileError
+        An unknown or missing key, a value of the wrong kind, or one that the model refuses.
+    """
+    table = place.table(value)
+    fields = fields_of(cls)
+    place.check_keys(table, [f.key for f in fields], [f.key for f in fields if f.required])
+    given = {
+        field.attribute.name: _read(field, table[field.key], place.key(field.key), registry)
+        for field in fields
+        if field.key in table
+    }
+    starred = [p.name for p in inspect.signature(cls).parameters.values() if p.kind is inspect.Parameter.VAR_POSITIONAL]
+    several = [item for name in starred for item in given.pop(name, ())]
+    try:
+        return cls(*several, **{_argument(cls, name): item for name, item in given.items()})
+    except SpringpoiseError as error:
+        raise _at_field(cls, fields, table, place, error) from error
+
+
+def _argument(cls: type, name: str) -> str:
+    return str(attrs.fields_dict(cls)[name].alias or name)
+
+
+def _at_field(
+    cls: type, fields: Iterable[_Field], table: Mapping[str, Any], place: Place, error: SpringpoiseError
+) -> Exception:
+    """The model's complaint, at the key that it is about where it names one."""
+    owners = "|".join(base.__name__ for base in cls.__mro__)
+    said = re.match(rf"(?:{owners})\.(\w+)", str(error))
+    for field in fields:
+        if said and field.attribute.name == said[1] and field.key in table:
+            raw = table[field.key]
+            as_written = (
+                f" (written {Place.shown(raw)})" if isinstance(raw, str) and repr(raw) not in str(error) else ""
+            )
+            return place.key(field.key).error(f"{error}{as_written}")
+    return place.error(str(error))
+
+
+def _read(field: _Field, value: Any, place: Place, registry: Registry) -> Any:
+    if "write" in field.attribute.metadata:  # the field reads its own text
+        return _own_text(field, place.text(value), place)
+    if field.unit is not None:
+        return _amount(field, value, place)
+    first, *others = field.hints
+    if others and all(attrs.has(option) for option in field.hints):
+        return _one_of(field.hints, value, place, registry)
+    return _plain(first, value, place, registry)
+
+
+def _own_text(field: _Field, text: str, place: Place) -> Any:
+    converter: Any = field.attribute.converter
+    try:
+        return converter(text)
+    except SpringpoiseError as error:
+        raise place.failing(error) from error
+
+
+def _amount(field: _Field, value: Any, place: Place) -> Any:
+    """A value with a unit as the texts that the model's own converter reads, or as a plain number."""
+    several = next((typing.get_args(h) for h in field.hints if typing.get_origin(h) is tuple), None)
+    if several is None:
+        _check_leaf(field.unit, value, place)
+        return value
+    entries = place.entries(value)
+    if Ellipsis not in several and len(entries) != len(several):
+        raise place.error(f"must be a list of {len(several)} values, got {len(entries)}: {Place.shown(value)}")
+    for at, item in entries:
+        _check_leaf(field.unit, item, at)
+    return tuple(item for _, item in entries)
+
+
+def _check_leaf(unit: str | None, value: Any, place: Place) -> None:
+    if unit == "1":
+        if isinstance(value, bool) or not isinstance(value, int | float):
+            raise place.error(f"must be a number without quotes, got {Place.shown(value)}")
+    elif isinstance(value, bool) or not isinstance(value, str):
+        example = f"; write '{value} {unit}' if {unit} is meant" if type(value) in {int, float} else ""
+        raise place.error(f"must be a text with a unit, such as '1 {unit}', got {Place.shown(value)}{example}")
+
+
+def _plain(hint: Any, value: Any, place: Place, registry: Registry) -> Any:
+    if hint in registry:
+        return read_kind(registry[hint], value, place, registry)
+    if isinstance(hint, type) and attrs.has(hint):
+        return read_model(hint, value, place, registry)
+    if typing.get_origin(hint) is tuple:
+        inner, *_ = typing.get_args(hint)
+        options = typing.get_args(inner)
+        if options and all(attrs.has(option) for option in options):
+            return tuple(_one_of(options, item, at, registry) for at, item in place.entries(value))
+        return tuple(_plain(inner, item, at, registry) for at, item in place.entries(value))
+    if hint is str:
+        return place.text(value)
+    wanted = {int: "a whole number", bool: "true or false"}.get(hint)
+    if wanted is None:
+        raise TypeError(f"a field of type {hint!r} at {place.keys} cannot be read from a file")
+    if type(value) is not hint:
+        raise place.error(f"must be {wanted}, got {Place.shown(value)}")
+    return value
+
+
+def _one_of(options: tuple[Any, ...], value: Any, place: Place, registry: Registry) -> Any:
+    """The model whose keys the table has most of."""
+    table = place.table(value)
+    best = max(options, key=lambda cls: sum(field.key in table for field in fields_of(cls)))
+    return read_model(best, table, place, registry)
+
+
+# ------------------------------------------------------------------------------------------------
+# writing
+
+
+def write_model(model: Any, registry: Registry, family: Family | None = None) -> dict[str, Any]:
+    """The table that :func:`read_model` reads back as an equal object; fields at their default are left out.
+
+    Raises
+    ------
+    InputError
+        A model of a kind that files do not know, or a field that holds an array.
+    """
+    table: dict[str, Any] = {}
+    if family is not None:
+        kind = next((name for name, cls in family.kinds.items() if type(model) is cls), None)
+        if kind is None:
+            raise InputError(
+                f"a {type(model).__name__} cannot be written to a file, only these kinds of {family.noun}: "
+                f"{', '.join(family.kinds)}"
+            )
+        table[family.key] = kind
+    for field in fields_of(type(model)):
+        value = getattr(model, field.attribute.name)
+        if value is None or (not field.required and value == _default(field.attribute)):
+            continue
+        table[field.key] = _write(field, value, registry, f"{type(model).__name__}.{field.attribute.name}")
+    return table
+
+
+def _default(attribute: attrs.Attribute[Any]) -> Any:
+    default: Any = attribute.default
+    return default.factory() if hasattr(default, "factory") else default
+
+
+def _write(field: _Field, value: Any, registry: Registry, name: str) -> Any:
+    if "write" in field.attribute.metadata:
+        return field.attribute.metadata["write"](value)
+    if field.unit is not None:
+        return _written(value, field.unit, name)
+    for hint in field.hints:
+        if hint in registry:
+            return write_model(value, registry, registry[hint])
+    if isinstance(value, tuple):
+        return [write_model(item, registry) if attrs.has(type(item)) else item for item in value]
+    return write_model(value, registry) if attrs.has(type(value)) else value
+
+
+def _written(value: Any, unit: str, name: str) -> Any:
+    if isinstance(value, tuple):
+        return [_written(item, unit, name) for item in value]
+    if not isinstance(value, float | int):
+        raise InputError(f"{name} must be a single value to be written to a file, got {type(value).__name__}")
+    return float(value) if unit == "1" else written(value, unit)

@@ -1,0 +1,159 @@
+"""One limit, judged: how far inside or outside, where, and a sentence that says so."""
+
+from __future__ import annotations
+
+import math
+from typing import Any
+
+import attrs
+import numpy as np
+from numpy.typing import NDArray
+
+from springpoise.feedforward import Actuator
+from springpoise.guard.amounts import JSON_SUFFIX, finite_or_none, shown
+from springpoise.mechanism import Mechanism
+
+__all__ = ["Case", "LimitVerdict", "broken", "greatest", "judged", "least"]
+
+Array = NDArray[np.float64]
+
+
+@attrs.frozen
+class Case:
+    """What a limit is judged on."""
+
+    mechanism: Mechanism
+    """The mechanism, with the payload of the limit on it."""
+    actuator: Actuator | None
+    """The actuator; None where the file states none."""
+    poses: Array
+    """Poses [rad], shape (n,)."""
+    payload: str | None
+    """Name of the payload; None for none."""
+
+
+@attrs.frozen(kw_only=True)
+class LimitVerdict:
+    """A judged limit. The margin says how far, the flag only whether."""
+
+    what: str
+    """What is limited, as the file says it."""
+    holds: bool
+    """Whether the limit is kept."""
+    value: float
+    """What was found, in ``unit``; NaN where it is not a number in some pose."""
+    allowed: float
+    """What is allowed, in ``unit``."""
+    margin: float
+    """How far inside the limit, in ``unit``; negative outside, NaN where the value is."""
+    unit: str
+    """SI unit of the three, such as ``"N*m"``."""
+    at: float | None
+    """Pose where the value occurs [rad]; None where it belongs to no pose."""
+    payload: str | None = None
+    """Payload that was on the mechanism; None for none."""
+    about: str = ""
+    """What the value is of where that is not plain, such as a spring's name."""
+    sentence: str = ""
+    """All of this in words."""
+
+    def to_dict(self) -> dict[str, Any]:
+        """Ready for JSON: numbers in SI with the unit in the key, None for what is not finite."""
+        suffix = JSON_SUFFIX[self.unit]
+        return {
+            "what": self.what,
+            "holds": self.holds,
+            f"value{suffix}": finite_or_none(self.value),
+            f"allowed{suffix}": finite_or_none(self.allowed),
+            f"margin{suffix}": finite_or_none(self.margin),
+            "at_rad": finite_or_none(self.at),
+            "payload": self.payload,
+            "about": self.about,
+            "sentence": self.sentence,
+        }
+
+    def __str__(self) -> str:
+        return self.sentence
+
+
+def greatest(values: Any, case: Case) -> tuple[float, float]:
+    """The greatest value over the poses and its pose [rad]; NaN and its pose where there is one."""
+    return _extreme(values, case, np.argmax)
+
+
+def least(values: Any, case: Case) -> tuple[float, float]:
+    """The least value over the poses and its pose [rad]; NaN and its pose where there is one."""
+    return _extreme(values, case, np.argmin)
+
+
+def _extreme(values: Any, case: Case, choose: Any) -> tuple[float, float]:
+    over = np.broadcast_to(np.asarray(values, dtype=np.float64), case.poses.shape)
+    wrong = np.isnan(over)
+    i = int(np.argmax(wrong)) if wrong.any() else int(choose(over))
+    return float(over[i]), float(case.poses[i])
+
+
+def judged(
+    case: Case,
+    what: str,
+    value: float,
+    allowed: float,
+    unit: str,
+    at: float | None,
+    *,
+    at_least: bool = False,
+    about: str = "",
+    subject: str = "",
+    also: str = "",
+) -> LimitVerdict:
+    """The verdict on a value that has to be at most, or at least, what is allowed.
+
+    Parameters
+    ----------
+    about
+        What the value is of, such as a spring's name.
+    subject
+        What the sentence begins with; by default ``what``.
+    also
+        Words that follow the value in the sentence.
+    """
+    margin = value - allowed if at_least else allowed - value
+    holds = bool(margin >= 0)  # NaN does not hold
+    where = "" if at is None or (subject and not math.isnan(value)) else f" at {shown(at, 'rad')}"
+    load = f" with payload {case.payload!r}" if case.payload is not None else ""
+    head = f"{subject or what}{f' of {about}' if about else ''}{load}"
+    if math.isnan(margin) or margin == -math.inf:
+        hint = "is an end of a cable inside a disc there, or a value far too large?"
+        sentence = f"{head} is not a number{where}; {hint}"
+    else:
+        rule = "at least" if at_least else "at most"
+        far = f"{shown(abs(margin), unit)} {'inside' if holds else 'outside'}"
+        far = "by far inside" if margin == math.inf else far
+        sentence = f"{head} is {shown(value, unit)}{also}{where}, {far} the limit of {rule} {shown(allowed, unit)}"
+    return LimitVerdict(
+        what=what,
+        holds=holds,
+        value=value,
+        allowed=allowed,
+        margin=margin,
+        unit=unit,
+        at=at,
+        payload=case.payload,
+        about=about,
+        sentence=sentence,
+    )
+
+
+def broken(case: Case, what: str, allowed: float, unit: str, sentence: str) -> LimitVerdict:
+    """The verdict where there is nothing that the limit could be kept by."""
+    return LimitVerdict(
+        what=what,
+        holds=False,
+        value=math.nan,
+        allowed=allowed,
+        margin=math.nan,
+        unit=unit,
+        at=None,
+        payload=case.payload,
+        sentence=f"{what}: {sentence}",
+    )

@@ -1,0 +1,96 @@
+"""The examples of the documentation: they hold as shipped, and a build that is off is caught."""
+
+from __future__ import annotations
+
+import shutil
+from pathlib import Path
+
+import attrs
+import numpy as np
+import pytest
+
+from springpoise import guard
+from springpoise.balance import read_stock
+
+EXAMPLES = Path(__file__).parents[3] / "docs" / "examples"
+OPEN = EXAMPLES / "greenhouse_lift.poise.toml"
+BUILT = EXAMPLES / "greenhouse_lift_built.poise.toml"
+STOCK = EXAMPLES / "greenhouse_springs.csv"
+
+
+def test_the_built_file_is_what_the_design_finds() -> None:
+    found = guard.design(OPEN).require()
+    assert found.solved is not None
+    assert found.after is not None
+    assert found.after.worst_fraction < 0.01
+    assert max(map(len, str(found).splitlines())) <= 100
+    built = guard.load(BUILT)
+    assert found.solved == built
+    mount = built.mechanism.springs[0]
+    stock = read_stock(STOCK)
+    assert mount.spring == stock.spring(stock.parts.index(str(mount.name)))
+
+
+def test_the_built_file_keeps_its_limits() -> None:
+    report = guard.check(BUILT)
+    assert report.holds, str(report)
+    assert all(verdict.margin > 0 for verdict in report.verdicts)
+
+
+@pytest.mark.parametrize(
+    ("old", "new"),
+    [
+        ('["-18 mm", "235.4 mm"]', '["-18 mm", "240.4 mm"]'),
+        ('["-18 mm", "235.4 mm"]', '["-18 mm", "230.4 mm"]'),
+        ('["-18 mm", "235.4 mm"]', '["-13 mm", "235.4 mm"]'),
+        ('["-18 mm", "235.4 mm"]', '["-23 mm", "235.4 mm"]'),
+        ('["-36 mm", "-400 mm"]', '["-36 mm", "-395 mm"]'),
+        ('["-36 mm", "-400 mm"]', '["-36 mm", "-405 mm"]'),
+    ],
+)
+def test_an_anchor_that_is_5_mm_off_breaks_a_limit(tmp_path: Path, old: str, new: str) -> None:
+    text = BUILT.read_text(encoding="utf-8")
+    assert old in text
+    moved = tmp_path / "moved.poise.toml"
+    moved.write_text(text.replace(old, new), encoding="utf-8")
+    report = guard.check(moved)
+    assert [verdict.what for verdict in report.failures] == ["residual torque"]
+    assert "% of the peak gravity torque, where 1.5 % is allowed) at " in report.failures[0].sentence
+    assert "outside the limit of at most 0.627" in report.failures[0].sentence
+    shift = guard.compare(BUILT, moved, payload="half a crate").shift
+    assert shift > 0.25
+
+
+def test_the_examples_say_that_they_are_invented() -> None:
+    for file in (OPEN, BUILT, STOCK):
+        assert "invented" in file.read_text(encoding="utf-8").splitlines()[0], file
+
+
+def test_the_invented_springs_obey_their_own_wire() -> None:
+    """Rate from G·d⁴/(8·D³·n) with G = 80 GPa, rounded to three digits; body stress from 8·F·D·K/(π·d³).
+
+    Music wire's tensile strength is 2211 MPa·mm^0.145 / d^0.145, 45 % of which the body may carry (a
+    textbook's design values, from memory); K is Wahl's factor.
+    """
+    stock = read_stock(STOCK)
+    assert len(stock) >= 60
+    others = stock.others
+    wire = np.array([float(row["wire"]) for row in others])
+    mean = np.array([float(row["outside diameter"]) for row in others]) - wire
+    coils = np.array([float(row["coils"]) for row in others])
+    assert stock.rate == pytest.approx(1e3 * 80e3 * wire**4 / (8 * mean**3 * coils), rel=6e-3)
+    index = mean / wire
+    wahl = (4 * index - 1) / (4 * index - 4) + 0.615 / index
+    load = stock.initial_tension + stock.rate * (stock.longest - stock.free_length)
+    stress = 8 * load * mean * wahl / (np.pi * wire**3)
+    strength = 2211 / wire**0.145
+    assert np.all(stress <= 0.4501 * strength)
+    assert np.all(stress > 0.43 * strength)
+
+
+def test_the_design_is_the_same_elsewhere(tmp_path: Path) -> None:
+    for file in (OPEN, STOCK):
+        shutil.copy(file, tmp_path / file.name)
+    there = guard.load(tmp_path / OPEN.name)
+    assert there == guard.load(OPEN)
+    assert attrs.evolve(there, path=None) == there
