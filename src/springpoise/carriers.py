@@ -181,6 +181,9 @@ def joints_of(q: Carrier, count: int) -> tuple[Carrier, ...]:
     return tuple(q[..., i] for i in range(count))
 
 
-def distance(dx: Carrier, dy: Carrier) -> Carrier:
-    """Length of the vector (dx, dy), with the right limits where it vanishes."""
-    return namespace(dx, dy).sqrt(dx * dx + dy * dy + ALMOST_NOTHING)
+def distance(*components: Carrier) -> Carrier:
+    """Length of a vector, with the right limits where it vanishes."""
+    square: Carrier = components[0] * components[0]
+    for component in components[1:]:
+        square = square + component * component
+    return namespace(square).sqrt(square + ALMOST_NOTHING)

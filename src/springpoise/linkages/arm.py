@@ -53,11 +53,24 @@ class Arm:
     def __attrs_post_init__(self) -> None:
         if not self.bodies:
             raise InputError("Arm.bodies must be at least one Body, got none; a massless arm is Body(0, (0, 0))")
+        for body in self.bodies:
+            if len(body.com) != 2:
+                raise InputError(f"Body.com must be (x, y) in m on an Arm, got {body.com}")
 
     @property
     def joint_count(self) -> int:
         """Number of joints: 1."""
         return 1
+
+    @property
+    def joint_names(self) -> tuple[str, ...]:
+        """Name of the joint: ``"arm"``."""
+        return ("arm",)
+
+    @property
+    def pivots(self) -> tuple[str, ...]:
+        """Names of the joints whose loads `pivot_forces` gives: the arm's own."""
+        return ("arm",)
 
     @property
     def frames(self) -> tuple[str, ...]:
@@ -98,11 +111,17 @@ class Arm:
             return (PointMass(mass, Point("arm", (self.moment[0] / mass, self.moment[1] / mass))),)
         return tuple(PointMass(body.mass, Point("arm", body.com)) for body in self.bodies)
 
-    def with_body(self, body: Body) -> Arm:
+    def with_body(self, body: Body, frame: str = "arm") -> Arm:
         """The same arm with one more body on it."""
         return attrs.evolve(self, bodies=(*self.bodies, body))
 
+    def without_body(self, name: str) -> Arm:
+        """The same arm without the bodies of that name."""
+        return attrs.evolve(self, bodies=tuple(body for body in self.bodies if body.name != name))
+
     def _on_arm(self, point: Point) -> bool:
+        if len(point.at) != 2:
+            raise InputError(f"Point.at must be (x, y) in m on an Arm, got {point.at}")
         if point.body == "arm":
             return True
         if point.body == "ground":
@@ -124,8 +143,9 @@ class Arm:
         InputError
             The point is fixed in a body that the arm does not have.
         """
+        on_arm = self._on_arm(point)
         px, py = point.at
-        if not self._on_arm(point):
+        if not on_arm:
             return px, py
         xp = namespace(q, px, py)
         c, s = xp.cos(q), xp.sin(q)
@@ -138,7 +158,7 @@ class Arm:
         x, y = self.position(point, q)
         return ((-y, x),)
 
-    def pivot_force(self, applied: Sequence[AppliedForce], q: Carrier) -> tuple[Carrier, Carrier]:
-        """Force (x, y) that the bearing exerts on the arm so that it stands still under ``applied`` [N]."""
-        on_arm = [force for force in applied if self._on_arm(force.at)]
-        return -sum(force.x for force in on_arm), -sum(force.y for force in on_arm)
+    def pivot_forces(self, applied: Sequence[AppliedForce], q: Carrier) -> tuple[tuple[Carrier, ...], ...]:
+        """Force (x, y) that the bearing exerts on the arm so that it stands still under ``applied``, as the only one [N]."""
+        on_arm = [force for at, force in applied if self._on_arm(at)]
+        return ((-sum(force[0] for force in on_arm), -sum(force[1] for force in on_arm)),)

@@ -30,8 +30,8 @@ class Body:
 
     mass: Carrier = attrs.field(converter=units.kilogram, validator=units.not_negative)
     """Mass [kg], >= 0."""
-    com: tuple[Carrier, Carrier] = attrs.field(converter=units.metre_pair)
-    """Centre of mass (x, y) in the frame of the link [m]."""
+    com: tuple[Carrier, ...] = attrs.field(converter=units.metre_place)
+    """Centre of mass in the frame of the link [m]: (x, y), or (x, y, z) in space."""
     name: str | None = attrs.field(default=None, kw_only=True)
     """What the body is called in tables; None for not named."""
 
@@ -59,5 +59,5 @@ class Point:
 
     body: str = attrs.field(converter=_name_of_body)
     """Name of the body that carries the point, such as ``"ground"`` or ``"arm"``."""
-    at: tuple[Carrier, Carrier] = attrs.field(converter=units.metre_pair)
-    """Position (x, y) in the body's frame [m]."""
+    at: tuple[Carrier, ...] = attrs.field(converter=units.metre_place)
+    """Position in the body's frame [m]: (x, y), or (x, y, z) in space."""

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from typing import NamedTuple, Protocol
 
 from springpoise.carriers import Carrier
@@ -19,15 +18,21 @@ class PointMass(NamedTuple):
 
 
 class AppliedForce(NamedTuple):
-    """A force (x, y) in ground directions [N] that acts at a point of a body."""
+    """A force in ground directions [N], (x, y) or (x, y, z), that acts at a point of a body."""
 
     at: Point
-    x: Carrier
-    y: Carrier
+    force: tuple[Carrier, ...]
 
 
 class Linkage(Protocol):
     """Where its bodies are, and which masses it carries.
+
+    More members are used where a linkage has them: ``dimensions``, 3 in space and taken as 2
+    otherwise; ``joint_names``; ``pivots`` (names) and ``pivot_forces(applied, q)``, for each of
+    them the force of its bearing on what hangs on it [N], without which pivot loads are not known;
+    ``with_body(body, frame)`` and ``without_body(name)`` for payloads; ``gravity_torques(q,
+    gravity)`` where there is a shorter way than over all masses; and ``missing(q)`` with
+    ``unreachable`` for loops that cannot close at every pose.
 
     ``q`` is one joint's angle of any shape, or for n joints an array of shape (..., n) or a tuple
     of n components. Results are given component by component; what does not move may come back
@@ -49,14 +54,10 @@ class Linkage(Protocol):
         """Point masses that weigh as much as the bodies, in the same places [kg]."""
         ...
 
-    def position(self, point: Point, q: Carrier) -> tuple[Carrier, Carrier]:
-        """Ground coordinates (x, y) of ``point`` [m]."""
+    def position(self, point: Point, q: Carrier) -> tuple[Carrier, ...]:
+        """Ground coordinates of ``point`` [m]: (x, y), or (x, y, z) in space."""
         ...
 
-    def jacobian(self, point: Point, q: Carrier) -> tuple[tuple[Carrier, Carrier], ...]:
-        """For each joint, the derivative (dx, dy) of the position by that joint's angle [m/rad]."""
-        ...
-
-    def pivot_force(self, applied: Sequence[AppliedForce], q: Carrier) -> tuple[Carrier, Carrier]:
-        """Force (x, y) that the pivot's bearing exerts on what it carries, to balance ``applied`` [N]."""
+    def jacobian(self, point: Point, q: Carrier) -> tuple[tuple[Carrier, ...], ...]:
+        """For each joint, the derivative of the position by that joint's angle [m/rad]."""
         ...

@@ -2,10 +2,9 @@
 
 from __future__ import annotations
 
-import functools
 import math
-from collections.abc import Callable, Sequence
-from typing import Any, TypeVar, cast, overload
+from collections.abc import Sequence
+from typing import Any, overload
 
 import attrs
 import numpy as np
@@ -13,20 +12,33 @@ from numpy.typing import NDArray
 
 from springpoise import units
 from springpoise.carriers import Carrier, joints_of, namespace
-from springpoise.errors import InputError, InputTypeError
+from springpoise.errors import InputError, InputTypeError, UnitError
 from springpoise.gravity import STANDARD_GRAVITY
 from springpoise.linkages.body import Body, Point
-from springpoise.linkages.protocol import AppliedForce, Linkage
+from springpoise.linkages.protocol import Linkage
+from springpoise.mechanism.at_poses import at_poses
 from springpoise.mechanism.equilibria import Equilibria, find_equilibria
 from springpoise.mechanism.friction import Friction
 from springpoise.mechanism.mount import SpringMount, SpringState
-from springpoise.paths.protocol import pulls_of
+from springpoise.mechanism.sums import (
+    Gravity,
+    friction_bands,
+    gravity_energy,
+    gravity_torques,
+    joined,
+    magnitude,
+    pivot_forces,
+    spring_energy,
+    spring_torques,
+)
 from springpoise.units import ScalarLike
 
 __all__ = ["Mechanism"]
 
 Array = NDArray[np.float64]
-Gravity = tuple[Carrier, Carrier]
+
+PAYLOAD = "payload"
+"""Name of the body that stands for a payload."""
 
 
 def _linkage(value: Any) -> Any:
@@ -43,71 +55,34 @@ def _mounts(value: Any) -> tuple[SpringMount, ...]:
     return tuple(items)
 
 
-def _friction(value: Any) -> Friction:
-    if not isinstance(value, Friction):
-        raise InputTypeError(f"Mechanism.friction must be a Friction, got {value!r}")
-    return value
-
-
-_Method = TypeVar("_Method", bound=Callable[..., Any])
-
-
-def _at_poses(joint_axes: int) -> Callable[[_Method], _Method]:
-    """Wraps a method of poses: converts ``q`` and ``gravity`` once, and lets no bad pose give a number.
-
-    A pose that is NaN or infinite gives NaN, whatever a formula makes of it on the way. With
-    several joints, results have ``joint_axes`` axes of joints behind those of the poses.
-    """
-
-    def wrap(method: _Method) -> _Method:
-        @functools.wraps(method)
-        def convert(self: Mechanism, q: Any, gravity: Any = None) -> Any:
-            angles = units.poses(q)
-            pull = self.gravity if gravity is None else units.acceleration_pair(gravity, "gravity")
-            count = self.linkage.joint_count
-            if type(angles) is float and count == 1:
-                value = method(self, angles if (good := math.isfinite(angles)) else 0.0, pull)
-                return value if good and type(value) is float else _at_one_pose(value, good)
-            if _follows_along(angles):
-                return method(self, angles, pull)
-            self._check_shape(angles)
-            with np.errstate(all="ignore"):
-                return _nan_where_not_finite(method(self, angles, pull), angles, count, joint_axes)
-
-        return cast("_Method", convert)
-
-    return wrap
-
-
-def _follows_along(q: Any) -> bool:
-    """Whether poses are recorded variables, alone or one for each joint, and not numbers."""
-    if isinstance(q, float | np.ndarray):
-        return False
-    return isinstance(q, tuple | list) or not hasattr(namespace(q), "asarray")
-
-
-def _at_one_pose(value: Any, good: bool) -> Any:
-    """A plain float, or an array where a field is one; NaN at a bad pose."""
-    if isinstance(value, tuple):
-        return tuple(_at_one_pose(item, good) for item in value)
-    plain: Any = float(value) if np.ndim(value) == 0 and isinstance(value, int | np.ndarray | np.generic) else value
-    return plain if good else plain * math.nan
-
-
-def _nan_where_not_finite(value: Any, q: Any, joints: int, joint_axes: int = 0) -> Any:
-    """``value`` in the shape of the poses, NaN where one is not finite."""
-    if isinstance(value, tuple):
-        return tuple(_nan_where_not_finite(item, q, joints, joint_axes) for item in value)
-    xp = namespace(q)
-    fine = xp.isfinite(q)
-    if joints > 1:
-        fine = xp.all(fine, axis=-1)
-        for _ in range(joint_axes):
-            fine = xp.expand_dims(fine, axis=-1)
-    if np.shape(value) == fine.shape and bool(xp.all(fine)):
+def _friction(value: Any) -> Friction | tuple[Friction, ...]:
+    if isinstance(value, Friction):
         return value
-    # Numbers alone would not do for every namespace, and a result may not be writable.
-    return xp.where(fine, value + xp.zeros(fine.shape), math.nan)
+    if isinstance(value, Sequence) and value and all(isinstance(item, Friction) for item in value):
+        return tuple(value)
+    raise InputTypeError(f"Mechanism.friction must be a Friction, or a sequence with one for each joint, got {value!r}")
+
+
+def _gravity(value: Any) -> Any:
+    return None if value is None else units.acceleration(value, "Mechanism.gravity")
+
+
+def _travel(value: Any) -> Any:
+    """One range, or for several joints a range each; None for not given."""
+    if value is None:
+        return None
+    items = value if isinstance(value, Sequence) and not isinstance(value, str) else None
+    if items and all(item is None or (isinstance(item, Sequence | np.ndarray) and not isinstance(item, str)) for item in items):
+        return tuple(None if item is None else _joint_range(item) for item in items)
+    return units.radian_pair(value, "Mechanism.travel")
+
+
+def _joint_range(value: Any) -> tuple[Any, Any]:
+    """The range of one of several joints: angles in rad, or ways in m for a prismatic joint."""
+    try:
+        return units.pair(value, "rad", "Mechanism.travel")
+    except UnitError:
+        return units.pair(value, "m", "Mechanism.travel")
 
 
 @attrs.frozen(field_transformer=units.named_fields)
@@ -143,18 +118,33 @@ class Mechanism:
     """Where the bodies are and what they weigh, such as an ``Arm``."""
     springs: tuple[SpringMount, ...] = attrs.field(default=(), converter=_mounts, kw_only=True)
     """The spring mounts: one or a sequence of them."""
-    friction: Friction = attrs.field(factory=Friction, converter=_friction, kw_only=True)
-    """Friction of the joint."""
-    travel: tuple[float, float] | None = attrs.field(default=None, converter=units.optional_radian_pair, kw_only=True)
-    """Range of the joint (from, to) [rad]; None for not given, which is a full turn."""
-    gravity: tuple[Carrier, Carrier] = attrs.field(
-        default=(0.0, -STANDARD_GRAVITY), converter=units.acceleration_pair, kw_only=True
-    )
-    """Gravity (gx, gy) where a call does not say otherwise [m/s²]."""
+    friction: Friction | tuple[Friction, ...] = attrs.field(default=Friction(), converter=_friction, kw_only=True)
+    """Friction of the joint, or of every joint alike; or a sequence with one for each joint."""
+    travel: Any = attrs.field(default=None, converter=_travel, kw_only=True)
+    """Range of the joint (from, to) [rad]; for several joints a range each [rad, or m for a prismatic joint].
+
+    None for not given: a full turn of a revolute joint.
+    """
+    gravity: tuple[Carrier, ...] = attrs.field(default=None, converter=_gravity, kw_only=True)
+    """Gravity where a call does not say otherwise [m/s²]: (gx, gy), or (gx, gy, gz) in space; standard gravity by default."""
 
     def __attrs_post_init__(self) -> None:
-        if self.travel is not None and not self.travel[0] < self.travel[1]:
-            raise InputError(f"Mechanism.travel must be (lower, higher) rad, got {self.travel}")
+        dimensions, count = getattr(self.linkage, "dimensions", 2), self.linkage.joint_count
+        if self.gravity is None:
+            # The default depends on the linkage; no call ever sees the None.
+            object.__setattr__(self, "gravity", (0.0,) * (dimensions - 1) + (-STANDARD_GRAVITY,))
+        if len(self.gravity) != dimensions:
+            raise InputError(
+                f"Mechanism.gravity must be {dimensions} components in m/s**2 for this linkage, got {self.gravity}"
+            )
+        ranges = () if self.travel is None else self.travel if _is_nested(self.travel) else (self.travel,)
+        for one in ranges:
+            if one is not None and not one[0] < one[1]:
+                raise InputError(f"Mechanism.travel must be (lower, higher) rad, got {one}")
+        if ranges and len(ranges) != count:
+            raise InputError(f"Mechanism.travel must be a range for each of {count} joints, got {len(ranges)}")
+        if isinstance(self.friction, tuple) and len(self.friction) != count:
+            raise InputError(f"Mechanism.friction must be one for each of {count} joints, got {len(self.friction)}")
         for index, mount in enumerate(self.springs):
             try:
                 mount.path.length(
@@ -170,37 +160,37 @@ class Mechanism:
     def gravity_torque(self, q: float | str, gravity: Any = None) -> float: ...
     @overload
     def gravity_torque(self, q: Any, gravity: Any = None) -> Any: ...
-    @_at_poses(1)
+    @at_poses(1)
     def gravity_torque(self, q: Any, gravity: Any = None) -> Any:
         """Torque that gravity exerts on the joint [N·m], counter-clockwise positive."""
-        return _joined(self._gravity_torques(q, gravity))
+        return joined(gravity_torques(self, q, gravity))
 
     @overload
     def spring_torque(self, q: float | str, gravity: Any = None) -> float: ...
     @overload
     def spring_torque(self, q: Any, gravity: Any = None) -> Any: ...
-    @_at_poses(1)
+    @at_poses(1)
     def spring_torque(self, q: Any, gravity: Any = None) -> Any:
         """Torque that the springs exert on the joint [N·m], counter-clockwise positive."""
-        return _joined(self._spring_torques(q))
+        return joined(spring_torques(self, q))
 
     @overload
     def holding_torque(self, q: float | str, gravity: Any = None) -> float: ...
     @overload
     def holding_torque(self, q: Any, gravity: Any = None) -> Any: ...
-    @_at_poses(1)
+    @at_poses(1)
     def holding_torque(self, q: Any, gravity: Any = None) -> Any:
         """Torque that the actuator must add to stand still, without friction [N·m].
 
         Minus the sum of gravity torque and spring torque.
         """
-        return _joined(self._holding_torques(q, gravity))
+        return joined(self._holding_torques(q, gravity))
 
     @overload
     def stiffness(self, q: float | str, gravity: Any = None) -> float: ...
     @overload
     def stiffness(self, q: Any, gravity: Any = None) -> Any: ...
-    @_at_poses(2)
+    @at_poses(2)
     def stiffness(self, q: Any, gravity: Any = None) -> Any:
         """Second derivative of the energy [N·m/rad]: how the holding torque grows; positive is stable.
 
@@ -217,21 +207,21 @@ class Mechanism:
             torques = self._holding_torques(seeded[0] if count == 1 else tuple(seeded), gravity)
             # A torque that is NaN has no slope, even where NaN entered the sum as a constant.
             slopes = [t.slope + 0.0 * t.value if isinstance(t, Dual) else 0.0 * (t + joints[0]) for t in torques]
-            columns.append(_joined(slopes))
+            columns.append(joined(slopes))
         return columns[0] if count == 1 else namespace(*columns).stack(columns, axis=-1)
 
     @overload
     def friction_band(self, q: float | str, gravity: Any = None) -> float: ...
     @overload
     def friction_band(self, q: Any, gravity: Any = None) -> Any: ...
-    @_at_poses(1)
+    @at_poses(1)
     def friction_band(self, q: Any, gravity: Any = None) -> Any:
         """Half-width of the friction band around the holding torque [N·m], >= 0.
 
         Joint friction, pulleys and hysteresis. The actuator stands still with anything from
         ``holding_torque - friction_band`` to ``holding_torque + friction_band``.
         """
-        return _joined(self._friction_bands(q, gravity))
+        return joined(friction_bands(self, q, gravity))
 
     # ---------------------------------------------------------------------------------------
     # energy, loads, states
@@ -240,34 +230,46 @@ class Mechanism:
     def energy(self, q: float | str, gravity: Any = None) -> float: ...
     @overload
     def energy(self, q: Any, gravity: Any = None) -> Any: ...
-    @_at_poses(0)
+    @at_poses(0)
     def energy(self, q: Any, gravity: Any = None) -> Any:
         """Potential energy of gravity and springs [J]; gravity's is zero at the pivot's height."""
-        return self._gravity_energy(q, gravity) + self._spring_energy(q)
+        return gravity_energy(self, q, gravity) + spring_energy(self, q)
 
     @overload
     def spring_energy(self, q: float | str, gravity: Any = None) -> float: ...
     @overload
     def spring_energy(self, q: Any, gravity: Any = None) -> Any: ...
-    @_at_poses(0)
+    @at_poses(0)
     def spring_energy(self, q: Any, gravity: Any = None) -> Any:
         """Energy stored in the springs alone [J]."""
-        return self._spring_energy(q)
+        return spring_energy(self, q)
 
-    @_at_poses(0)
-    def pivot_force(self, q: Any, gravity: Any = None) -> tuple[Any, Any]:
-        """Force (x, y) that the pivot's bearing exerts on the arm at rest, in ground directions [N]."""
-        return self._pivot_force(q, gravity)
+    @at_poses(0)
+    def pivot_force(self, q: Any, gravity: Any = None) -> tuple[Any, ...]:
+        """Force (x, y) that the pivot's bearing exerts on the arm at rest, in ground directions [N].
+
+        For several pivots a tuple with one force for each of ``linkage.pivots``.
+
+        Raises
+        ------
+        InputError
+            A linkage in space, or a path that does not know its pulls.
+        """
+        forces = pivot_forces(self, q, gravity)
+        return forces[0] if len(forces) == 1 else forces
 
     @overload
     def pivot_load(self, q: float | str, gravity: Any = None) -> float: ...
     @overload
     def pivot_load(self, q: Any, gravity: Any = None) -> Any: ...
-    @_at_poses(0)
+    @at_poses(1)
     def pivot_load(self, q: Any, gravity: Any = None) -> Any:
-        """Magnitude of the bearing force at the pivot at rest [N]."""
-        x, y = self._pivot_force(q, gravity)
-        return namespace(x, y).sqrt(x * x + y * y)
+        """Magnitude of the bearing force at the pivot at rest [N].
+
+        For several pivots along the last axis, in the order of ``linkage.pivots``; raises as
+        ``pivot_force``.
+        """
+        return joined([magnitude(force) for force in pivot_forces(self, q, gravity)])
 
     def spring_states(self, q: Any) -> tuple[SpringState, ...]:
         """For each mount, the spring's length, load, energy and margin to its working range.
@@ -312,19 +314,34 @@ class Mechanism:
     # the mechanism and its parts
 
     @property
-    def travel_or_turn(self) -> tuple[float, float]:
-        """The travel, or a full turn from -π to π where none was given [rad]."""
-        return (-math.pi, math.pi) if self.travel is None else self.travel
+    def travel_or_turn(self) -> Any:
+        """The travel, with a full turn from -π to π where none was given [rad]; for n joints n ranges."""
+        if self.linkage.joint_count == 1:
+            return _range(self.travel[0] if _is_nested(self.travel) else self.travel)
+        return tuple(_range(one) for one in self.travel or (None,) * self.linkage.joint_count)
+
+    @property
+    def joint_frictions(self) -> tuple[Friction, ...]:
+        """The friction of each joint."""
+        return self.friction if isinstance(self.friction, tuple) else (self.friction,) * self.linkage.joint_count
 
     def poses(self, count: int = 181) -> Array:
-        """``count`` evenly spaced poses over the travel [rad], shape (count,), both ends included."""
+        """``count`` poses over the travel [rad].
+
+        One joint: evenly spaced, both ends included, shape (count,). Several: spread evenly
+        through the box of the travels by a sequence that needs no seed, shape (count, n).
+        """
         if isinstance(count, bool) or not isinstance(count, int) or count < 2:
             raise InputError(f"count must be a whole number >= 2, got {count!r}")
-        return np.linspace(*self.travel_or_turn, count)
+        if self.linkage.joint_count == 1:
+            return np.linspace(*self.travel_or_turn, count)
+        low, high = np.array(self.travel_or_turn).T
+        return np.asarray(low + (high - low) * _spread(count, low.size))
 
-    def peak_gravity_torque(self, gravity: Any = None) -> float:
-        """Greatest gravity torque over the travel [N·m], >= 0: what residuals are compared with."""
-        return float(np.max(np.abs(self.gravity_torque(self.poses(721), gravity))))
+    def peak_gravity_torque(self, gravity: Any = None) -> Any:
+        """Greatest gravity torque over the travel [N·m], >= 0: what residuals are compared with; for n joints (n,)."""
+        peak = np.max(np.abs(self.gravity_torque(self.poses(721), gravity)), axis=0)
+        return float(peak) if self.linkage.joint_count == 1 and np.ndim(peak) == 0 else peak
 
     def _peak_spring_torque(self, mount: SpringMount) -> float:
         torques = np.abs(self.with_springs(mount).spring_torque(self.poses(721)))
@@ -359,7 +376,12 @@ class Mechanism:
         kilograms = units.kilogram(mass, "mass")
         if isinstance(kilograms, float) and kilograms < 0:
             raise InputError(f"mass must be >= 0 kg, got {kilograms}")
-        return attrs.evolve(self, linkage=linkage.with_body(Body(kilograms, point.at, name="payload")))
+        return attrs.evolve(self, linkage=linkage.with_body(Body(kilograms, point.at, name=PAYLOAD), point.body))
+
+    def without_payload(self) -> Mechanism:
+        """The same mechanism without what `with_payload` put on it."""
+        linkage: Any = self.linkage
+        return attrs.evolve(self, linkage=linkage.without_body(PAYLOAD))
 
     def with_springs(self, springs: Sequence[SpringMount] | SpringMount) -> Mechanism:
         """The same mechanism with these spring mounts instead of its own."""
@@ -368,78 +390,32 @@ class Mechanism:
     # ---------------------------------------------------------------------------------------
     # the sums themselves, component by component, on any carrier
 
-    def _check_shape(self, q: Any) -> None:
-        count, shape = self.linkage.joint_count, np.shape(q)
-        if count > 1 and (not shape or shape[-1] != count):
-            raise InputError(f"q must be of shape (..., {count}) for {count} joints, got shape {shape}")
-
-    def _gravity_torques(self, q: Carrier, gravity: Gravity) -> list[Carrier]:
-        gx, gy = gravity
-        totals: list[Carrier] = [0.0] * self.linkage.joint_count
-        for mass, at in self.linkage.masses:
-            for joint, (dx, dy) in enumerate(self.linkage.jacobian(at, q)):
-                totals[joint] = totals[joint] + mass * (gx * dx + gy * dy)
-        return totals
-
-    @_at_poses(0)
+    @at_poses(0)
     def _state_values(self, q: Any, gravity: Any = None) -> tuple[Any, ...]:
         states = [mount.state(self.linkage, q, "") for mount in self.springs]
         return tuple((state.length, state.load, state.energy, state.margin) for state in states)
 
-    def _spring_torques(self, q: Carrier) -> list[Carrier]:
-        totals: list[Carrier] = [0.0] * self.linkage.joint_count
-        for mount in self.springs:
-            for joint, torque in enumerate(mount.torques(self.linkage, q)):
-                totals[joint] = totals[joint] + torque
-        return totals
-
     def _holding_torques(self, q: Carrier, gravity: Gravity) -> list[Carrier]:
-        pulled = self._gravity_torques(q, gravity)
-        sprung = self._spring_torques(q)
+        pulled = gravity_torques(self, q, gravity)
+        sprung = spring_torques(self, q)
         return [-(g + s) for g, s in zip(pulled, sprung, strict=True)]
 
-    def _friction_bands(self, q: Carrier, gravity: Gravity) -> list[Carrier]:
-        joint_friction: Carrier = self.friction.coulomb
-        if self.friction.depends_on_load:
-            x, y = self._pivot_force(q, gravity)
-            load = namespace(x, y).sqrt(x * x + y * y)
-            joint_friction = joint_friction + self.friction.pivot_friction * self.friction.pivot_radius * load
-        totals: list[Carrier] = [joint_friction + 0.0 * angle for angle in joints_of(q, self.linkage.joint_count)]
-        for mount in self.springs:
-            for joint, band in enumerate(mount.friction_bands(self.linkage, q)):
-                totals[joint] = totals[joint] + band
-        return totals
 
-    def _gravity_energy(self, q: Carrier, gravity: Gravity) -> Carrier:
-        gx, gy = gravity
-        total: Carrier = 0.0
-        for mass, at in self.linkage.masses:
-            x, y = self.linkage.position(at, q)
-            total = total - mass * (gx * x + gy * y)
-        return total
-
-    def _spring_energy(self, q: Carrier) -> Carrier:
-        total: Carrier = 0.0
-        for mount in self.springs:
-            total = total + mount.energy(self.linkage, q)
-        return total
-
-    def _pivot_force(self, q: Carrier, gravity: Gravity) -> tuple[Carrier, Carrier]:
-        gx, gy = gravity
-        applied = [AppliedForce(at, mass * gx, mass * gy) for mass, at in self.linkage.masses]
-        for mount in self.springs:
-            tension = mount.count * mount.spring.load(mount.spring_length(self.linkage, q))
-            for at, x, y in pulls_of(mount.path, self.linkage, q):
-                applied.append(AppliedForce(at, tension * x, tension * y))
-        return self.linkage.pivot_force(applied, q)
+def _is_nested(travel: Any) -> bool:
+    return bool(travel) and (travel[0] is None or isinstance(travel[0], tuple))
 
 
-def _joined(components: Sequence[Carrier]) -> Carrier:
-    """Joint results as they leave: the value itself for one joint, along the last axis for n."""
-    if len(components) == 1:
-        return components[0]
-    xp = namespace(*components)
-    if hasattr(xp, "stack"):
-        zero = xp.zeros(np.broadcast_shapes(*(np.shape(c) for c in components)))
-        return xp.stack([c + zero for c in components], axis=-1)
-    return np.array(components) if all(isinstance(c, float) for c in components) else tuple(components)
+def _range(travel: Any) -> tuple[float, float]:
+    return (-math.pi, math.pi) if travel is None else travel
+
+
+def _spread(count: int, dimensions: int) -> Array:
+    """Points that fill the unit box evenly: multiples of irrational steps, modulo one.
+
+    Roberts, M. (2018), the generalised golden ratio: steps 1/φ, 1/φ², ... with φ^(d+1) = φ + 1.
+    """
+    ratio = 2.0
+    for _ in range(64):
+        ratio = (1.0 + ratio) ** (1.0 / (dimensions + 1))
+    steps = ratio ** -np.arange(1.0, dimensions + 1)
+    return np.asarray((0.5 + np.arange(count)[:, None] * steps) % 1.0)

@@ -9,8 +9,10 @@ import numpy as np
 
 from springpoise import units
 from springpoise.carriers import Carrier, namespace
-from springpoise.errors import InputTypeError
-from springpoise.linkages.protocol import Linkage
+from springpoise.errors import InputError, InputTypeError
+from springpoise.gravity import STANDARD_GRAVITY
+from springpoise.linkages.body import Point
+from springpoise.linkages.protocol import Linkage, PointMass
 from springpoise.paths.protocol import Path, friction_gradient_of
 from springpoise.springs.protocol import Spring, hysteresis_of, spring_like, working_range_of
 
@@ -75,8 +77,31 @@ class SpringMount:
     The spring's own length is the path's length less this. Negative for a spring that is longer
     than its path, as a compression spring seated behind a point is.
     """
+    moving_mass: Carrier = attrs.field(default=0.0, converter=units.kilogram, validator=units.not_negative, kw_only=True)
+    """Mass of one spring that is carried between the ends of a straight path [kg]: half of it weighs on each end.
+
+    A spring that lies on the ground behind a pulley moves nothing and needs none.
+    """
     name: str | None = attrs.field(default=None, kw_only=True)
     """What the mount is called in tables and errors; None for its number."""
+
+    def __attrs_post_init__(self) -> None:
+        if not _is_zero(self.moving_mass) and not hasattr(self.path, "ends"):
+            raise InputError(
+                f"SpringMount.moving_mass must be 0 kg on a {type(self.path).__name__}, got {self.moving_mass}; "
+                "put the mass that moves there into a Body"
+            )
+
+    def masses(self) -> tuple[PointMass, ...]:
+        """The springs' own weight, as point masses at the ends of the path."""
+        if _is_zero(self.moving_mass):
+            return ()
+        ends: tuple[Point, Point] = self.path.ends  # type: ignore[attr-defined]
+        return tuple(PointMass(0.5 * self.count * self.moving_mass, end) for end in ends)
+
+    def hanging_stretch(self, x: Carrier, gravity: float = STANDARD_GRAVITY) -> Carrier:
+        """How much longer the spring hangs by its own weight at length ``x`` [m]: half its weight over its stiffness."""
+        return 0.5 * self.moving_mass * gravity / self.ask("stiffness", x)
 
     def spring_length(self, linkage: Linkage, q: Carrier) -> Carrier:
         """The spring's own length [m], or angle [rad]."""

@@ -206,8 +206,7 @@ class Cable:
         return tuple(
             AppliedForce(
                 _place(element),
-                run.span.choose(partial(run.pull, index, "ux")),
-                run.span.choose(partial(run.pull, index, "uy")),
+                (run.span.choose(partial(run.pull, index, "ux")), run.span.choose(partial(run.pull, index, "uy"))),
             )
             for run in self._runs(linkage, q)
             for index, element in enumerate(run.elements)
@@ -221,6 +220,8 @@ class Cable:
     def _runs(self, linkage: Linkage, q: Carrier) -> Iterator[_Run]:
         for elements in self._pieces():
             places = [linkage.position(_place(element), q) for element in elements]
+            if any(len(place) != 2 for place in places):
+                raise InputError("Cable.along must run in the plane of a planar linkage, got Points in space")
             circles = [Circle(x, y, _radius(e), _sense_of(e)) for (x, y), e in zip(places, elements, strict=True)]
             yield _Run(elements, Span(circles), [linkage.jacobian(_place(element), q) for element in elements])
 

@@ -54,10 +54,14 @@ class Straight:
     last: Point = attrs.field(converter=_last)
     """The other end."""
 
-    def _vector(self, linkage: Linkage, q: Carrier) -> tuple[Carrier, Carrier]:
-        ax, ay = linkage.position(self.first, q)
-        bx, by = linkage.position(self.last, q)
-        return bx - ax, by - ay
+    @property
+    def ends(self) -> tuple[Point, Point]:
+        """The two points between which the spring itself lies."""
+        return self.first, self.last
+
+    def _vector(self, linkage: Linkage, q: Carrier) -> tuple[Carrier, ...]:
+        first, last = linkage.position(self.first, q), linkage.position(self.last, q)
+        return tuple(b - a for a, b in zip(first, last, strict=True))
 
     def length(self, linkage: Linkage, q: Carrier) -> Carrier:
         """Distance of the two points [m]."""
@@ -65,14 +69,20 @@ class Straight:
 
     def gradient(self, linkage: Linkage, q: Carrier) -> tuple[Carrier, ...]:
         """For each joint, the derivative of the length [m/rad]."""
-        dx, dy = self._vector(linkage, q)
-        length = distance(dx, dy)
+        vector = self._vector(linkage, q)
+        length = distance(*vector)
         first, last = linkage.jacobian(self.first, q), linkage.jacobian(self.last, q)
-        return tuple((dx * (b[0] - a[0]) + dy * (b[1] - a[1])) / length for a, b in zip(first, last, strict=True))
+        rates = []
+        for start, end in zip(first, last, strict=True):
+            grown = vector[0] * (end[0] - start[0])
+            for component, a, b in zip(vector[1:], start[1:], end[1:], strict=True):
+                grown = grown + component * (b - a)
+            rates.append(grown / length)
+        return tuple(rates)
 
     def pulls(self, linkage: Linkage, q: Carrier) -> tuple[AppliedForce, ...]:
         """Forces on the two points for one newton of tension [1]: towards each other."""
-        dx, dy = self._vector(linkage, q)
-        length = distance(dx, dy)
-        ux, uy = dx / length, dy / length
-        return AppliedForce(self.first, ux, uy), AppliedForce(self.last, -ux, -uy)
+        vector = self._vector(linkage, q)
+        length = distance(*vector)
+        towards = tuple(component / length for component in vector)
+        return AppliedForce(self.first, towards), AppliedForce(self.last, tuple(-component for component in towards))

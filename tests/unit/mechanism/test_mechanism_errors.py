@@ -46,7 +46,7 @@ METHODS = (
             InputTypeError,
             r"^Mechanism\.springs must be SpringMounts, got \[Straight",
         ),
-        (lambda: Mechanism(ARM, friction=0.2), InputTypeError, r"^Mechanism\.friction must be a Friction, got 0\.2$"),
+        (lambda: Mechanism(ARM, friction=0.2), InputTypeError, r"^Mechanism\.friction must be a Friction, or a sequence with one for each joint, got 0\.2$"),
         (
             lambda: Mechanism(ARM, travel=(1.0, 1.0)),
             InputError,
@@ -57,7 +57,7 @@ METHODS = (
         (
             lambda: Mechanism(ARM, gravity=9.8),
             InputTypeError,
-            r"^Mechanism\.gravity must be a pair in m/s\*\*2, got 9\.8",
+            r"^Mechanism\.gravity must be a pair or three values in m/s\*\*2, got 9\.8",
         ),
         (
             lambda: Mechanism(

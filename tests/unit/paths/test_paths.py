@@ -22,15 +22,15 @@ class TestStraight:
         assert self.PATH.length(ARM, 0.0) == 0.5
         assert self.PATH.gradient(ARM, 0.0)[0] == pytest.approx(-0.24)
         first, last = self.PATH.pulls(ARM, 0.0)
-        assert (first.x, first.y) == pytest.approx((0.8, -0.6))
-        assert (last.x, last.y) == pytest.approx((-0.8, 0.6))
+        assert first.force == pytest.approx((0.8, -0.6))
+        assert last.force == pytest.approx((-0.8, 0.6))
         assert (first.at, last.at) == (self.PATH.first, self.PATH.last)
 
     def test_ends_that_meet(self):
         path = Straight(LEFT, LEFT)
         assert path.length(ARM, 0.0) == pytest.approx(0.0, abs=1e-140)
         assert path.gradient(ARM, 0.0) == (0.0,)
-        assert [(f.x, f.y) for f in path.pulls(ARM, 0.0)] == [(0.0, 0.0)] * 2
+        assert [f.force for f in path.pulls(ARM, 0.0)] == [(0.0, 0.0)] * 2
 
     @pytest.mark.parametrize("value", [None, (0, 1), "ground", Disc(HUB, radius=0.1, turn="cw")])
     def test_ends_must_be_points(self, value):
@@ -113,7 +113,7 @@ class TestCable:
         assert cable.length(ARM, 0.3) == pytest.approx(3.0 + 0.1 * math.pi)
         assert cable.wraps(ARM, 0.3) == pytest.approx([math.pi])
         assert cable.gradient(ARM, 0.3) == (0.0,)
-        assert [(f.x, f.y) for f in cable.pulls(ARM, 0.3)] == [
+        assert [f.force for f in cable.pulls(ARM, 0.3)] == [
             pytest.approx((0.0, 1.0)),
             pytest.approx((0.0, -2.0)),
             pytest.approx((0.0, 1.0), abs=1e-15),

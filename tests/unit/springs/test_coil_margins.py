@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from springpoise.errors import InputError
-from springpoise.springs.coil_margins import CoilMargins, Margin, limited
+from springpoise.springs.wire.margins import CoilMargins, Margin, limited
 
 
 def result(*margins: Margin) -> CoilMargins:

@@ -8,8 +8,8 @@ import numpy as np
 import pytest
 
 from springpoise.errors import InputError, InputTypeError, UnitError
-from springpoise.springs.extension_coil import ExtensionCoil
-from springpoise.springs.fatigue import ZIMMERLI_PEENED, Fatigue
+from springpoise.springs.wire.extension_coil import ExtensionCoil
+from springpoise.springs.wire.fatigue import ZIMMERLI_PEENED, Fatigue
 from springpoise.springs.materials import EN_SM, MUSIC_WIRE, PHOSPHOR_BRONZE, Relaxation
 from springpoise.springs.warnings import SpringIndexWarning, TemperatureWarning
 
@@ -64,7 +64,8 @@ class TestInitialTension:
         assert bare.limit_loads()  # the limits do not need it
 
     @pytest.mark.parametrize(
-        ("tension", "zone"), [(0, "below"), (15, "below"), (16, "inside"), (23, "inside"), (25, "above"), (40, "far above")]
+        ("tension", "zone"),
+        [(0, "below"), (15, "below"), (16, "inside"), (23, "inside"), (25, "above"), (40, "far above")],
     )
     def test_zones(self, tension: float, zone: str) -> None:
         assert coil(initial_tension=tension).initial_tension_zone() == zone
@@ -134,9 +135,10 @@ class TestMargins:
         assert one.margins((0, 10)).travel_left == pytest.approx(spring.longest - spring.free_length)
 
     def test_pairing_is_enforced(self) -> None:
-        assert coil().margins((0, 60), stress_factor="wahl").margin("body, static").factor < coil().margins(
-            (0, 60)
-        ).margin("body, static").factor
+        assert (
+            coil().margins((0, 60), stress_factor="wahl").margin("body, static").factor
+            < coil().margins((0, 60)).margin("body, static").factor
+        )
         with pytest.raises(InputError, match=r"which the allowable 0\.45 .* got 'direct shear'"):
             coil().margins((0, 60), stress_factor="direct shear")
         european = coil(material=EN_SM).margins((0, 60)).margin("body, static")
@@ -157,7 +159,7 @@ class TestMargins:
 
     def test_bad_input(self) -> None:
         for both in ({}, {"loads": (0, 60), "lengths": (0.12, 0.15)}):
-            with pytest.raises(InputError, match="either loads in N or lengths in m, got (neither|both)"):
+            with pytest.raises(InputError, match=r"either loads in N or lengths in m, got (neither|both)"):
                 coil().margins(**both)
         with pytest.raises(InputError, match=r"loads must be \(lowest, greatest\) N"):
             coil().margins((60, 0))
@@ -200,9 +202,7 @@ class TestConstructors:
 
     def test_from_load_beyond_all_wire(self) -> None:
         with pytest.raises(InputError, match=r"no music wire, A228 up to 6\.5 mm does; the best carries"):
-            ExtensionCoil.from_load(
-                "50 kN", index=7, rate="1 N/mm", material=MUSIC_WIRE, hook_bend_index=5, safety=1.3
-            )
+            ExtensionCoil.from_load("50 kN", index=7, rate="1 N/mm", material=MUSIC_WIRE, hook_bend_index=5, safety=1.3)
 
     def test_sizing_takes_one_load(self) -> None:
         with pytest.raises(InputTypeError, match="load must be a single value"):
@@ -285,7 +285,10 @@ class TestInput:
         builds = coil(wire=np.array([[1.98e-3], [2.02e-3]]), initial_tension=np.array([[18.0], [22.0]]))
         single = [coil(wire=w, initial_tension=f) for w, f in ((1.98e-3, 18.0), (2.02e-3, 22.0))]
         assert builds.rate.ravel() == pytest.approx([c.rate for c in single])
-        together, apart = builds.margins((25, 60), fatigue="gerber"), [c.margins((25, 60), fatigue="gerber") for c in single]
+        together, apart = (
+            builds.margins((25, 60), fatigue="gerber"),
+            [c.margins((25, 60), fatigue="gerber") for c in single],
+        )
         for margin in together.margins:
             assert np.ravel(margin.factor) == pytest.approx([m.margin(margin.name).factor for m in apart])
         assert together.governing.name == apart[0].governing.name

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from springpoise.errors import InputError, InputTypeError
-from springpoise.springs.fatigue import (
+from springpoise.springs.wire.fatigue import (
     CRITERIA,
     ZIMMERLI_PEENED,
     ZIMMERLI_UNPEENED,

@@ -46,7 +46,7 @@ class TestStrength:
             MUSIC_WIRE.tensile_strength(0.007)
         with pytest.raises(InputError, match=r"got 0\.05 mm"):
             MUSIC_WIRE.tensile_strength(0.05e-3)
-        with pytest.raises(InputError, match="from 0.1 to 6.5 mm"):
+        with pytest.raises(InputError, match=r"from 0\.1 to 6\.5 mm"):
             MUSIC_WIRE.tensile_strength(np.array([0.001, 0.007]))
 
     def test_the_ends_of_the_range_belong_to_it(self) -> None:
@@ -66,7 +66,7 @@ class TestStrength:
         assert older.with_strength(HANDBOOK_1987) == attrs.evolve(
             MUSIC_WIRE, other_strengths=older.with_strength(HANDBOOK_1987).other_strengths
         )
-        with pytest.raises(InputError, match="one of '1987 industry design handbook', .* got '1966'"):
+        with pytest.raises(InputError, match=r"one of '1987 industry design handbook', .* got '1966'"):
             MUSIC_WIRE.with_strength("1966")
 
     def test_segments_follow_one_another(self) -> None:
@@ -118,7 +118,7 @@ class TestAllowable:
             pair.chosen("direct shear")
 
     def test_bad_input(self) -> None:
-        with pytest.raises(InputError, match="Allowable.factors must be among"):
+        with pytest.raises(InputError, match=r"Allowable\.factors must be among"):
             Allowable(0.45, "whal")
         with pytest.raises(InputError, match="above 0 and at most 1, got 45"):
             Allowable(45, "wahl")

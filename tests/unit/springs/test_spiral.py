@@ -9,8 +9,8 @@ import pytest
 
 from springpoise import Arm, Body, JointTravel, Mechanism, SpringMount
 from springpoise.errors import InputError
-from springpoise.springs.power_spring import PowerSpring, TorqueCurve
-from springpoise.springs.spiral import Spiral, strip_curvature_factor
+from springpoise.springs.strips.power_spring import PowerSpring, TorqueCurve
+from springpoise.springs.strips.spiral import Spiral, strip_curvature_factor
 from springpoise.springs.warnings import PowerSpringWarning
 
 SPIRAL = {"width": 0.012, "thickness": 0.001, "length": 1.5, "youngs_modulus": 206e9, "outer_end": "clamped"}

@@ -8,8 +8,8 @@ import numpy as np
 import pytest
 
 from springpoise.errors import InputError, InputTypeError
-from springpoise.springs.strip import LifeTable, Strip
-from springpoise.springs.strip_spring import StripSpring
+from springpoise.springs.strips.strip import LifeTable, Strip
+from springpoise.springs.strips.strip_spring import StripSpring
 from springpoise.springs.warnings import StripDrumWarning
 
 STRIP = {

@@ -9,7 +9,7 @@ import pytest
 from springpoise.errors import InputError
 from springpoise.springs import TorsionSpring
 from springpoise.springs.materials import HARD_DRAWN, MUSIC_WIRE
-from springpoise.springs.torsion_coil import TorsionCoil
+from springpoise.springs.wire.torsion_coil import TorsionCoil
 from springpoise.springs.warnings import CoilCountWarning
 
 
@@ -59,7 +59,9 @@ class TestGeometry:
 
 class TestFriction:
     def test_never_twice(self) -> None:
-        with pytest.raises(InputError, match=r"winding_friction must be 0 with friction='averaged', got 0\.05; .* twice"):
+        with pytest.raises(
+            InputError, match=r"winding_friction must be 0 with friction='averaged', got 0\.05; .* twice"
+        ):
             coil(friction="averaged", winding_friction=0.05)
         with pytest.raises(InputError, match="friction must be 'none' or 'averaged', got 'some'"):
             coil(friction="some")
@@ -130,7 +132,9 @@ class TestMargins:
     def test_bad_input(self) -> None:
         with pytest.raises(InputError, match=r"either moments in N\*m or angles in rad, got neither"):
             coil().margins()
-        with pytest.raises(InputError, match=r"moments must be >= 0 N\*m, got -0\.5; a load in the spring's own direction"):
+        with pytest.raises(
+            InputError, match=r"moments must be >= 0 N\*m, got -0\.5; a load in the spring's own direction"
+        ):
             coil().margins((-0.5, 0.5))
         with pytest.raises(InputError, match="torsion_body for 1e\\+06 cycles, none is known"):
             coil(material=HARD_DRAWN).margins((0, 0.5), cycles=1e6)

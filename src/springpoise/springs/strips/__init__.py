@@ -1,0 +1,1 @@
+"""Springs of flat strip: constant-force strips, spiral springs, power springs."""
