@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Any, TypeAlias
 import numpy as np
 
 from springpoise.lookup import Lookup
+from springpoise.tape.expanding import multiplied_out
 from springpoise.tape.operations import OPERATIONS
 from springpoise.tape.signs import NONNEGATIVE, POSITIVE, sign_of
 
@@ -178,6 +179,9 @@ def _sum(name: str) -> Fold:
         inner = _inside(tape, x, "negative")
         if inner is not None and name == "add":
             return tape.operation("subtract", (y, inner[0]))
+        shorter = multiplied_out(tape, name, x, y)
+        if shorter is not None:
+            return shorter
         left, right = _scaled(tape, x), _scaled(tape, y)
         # Doubling is exact, so 2*a + 2*b may become 2*(a + b): derivatives of squares need it.
         if left is not None and right is not None and left[0] == right[0] and _scalar(tape, left[0]) == 2.0:

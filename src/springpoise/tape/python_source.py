@@ -27,6 +27,10 @@ MOST_CHARACTERS = 250
 
 _OWN_NAMES = re.compile(r"v\d+|table_\d+")
 _MATH_NAMES = frozenset(name for row in OPERATIONS.values() for name in row.needs)
+# Steps that are a call of the math module, which takes any number and gives a float.
+_MATH_FUNCTIONS = frozenset(
+    name for name, row in OPERATIONS.items() if row.needs and row.python.startswith(f"{row.needs[0]}(")
+)
 _RESERVED = _MATH_NAMES | {"abs", "bisect_right", "float", "inf", "nan"}
 
 
@@ -41,12 +45,14 @@ def python_source(program: Program, name: str, stand_alone: bool) -> str:
                 f"{constant.shape}; use numpy_function"
             )
     parameters = [f"{x}_" if x in {*_RESERVED, name} or _OWN_NAMES.fullmatch(x) else x for x in program.inputs]
-    lines, results = _body(guarded(program), parameters)
+    finished = guarded(program)
+    lines, results = _body(finished, parameters)
     outputs, failed = results, ["nan"] * len(results)
     text = [] if not stand_alone else _preamble(program)
     text.append(f"def {name}({', '.join(parameters)}):")
     # float() also makes NumPy scalars raise where the reals leave something undefined.
-    text += [f"    {parameter} = float({parameter})" for parameter in parameters]
+    bare = _used_as_they_are(finished)
+    text += [f"    {parameter} = float({parameter})" for slot, parameter in enumerate(parameters) if slot in bare]
     text.append("    try:")
     text += [f"        {line}" for line in lines]
     text.append(f"        return {_listed(outputs, program.scalar)}")
@@ -63,6 +69,15 @@ def python_globals(program: Program) -> dict[str, Any]:
         # The float branch of the look-up: the inputs are floats here.
         names[f"table_{number}"] = table._at
     return names
+
+
+def _used_as_they_are(program: Program) -> set[int]:
+    """Inputs that arithmetic meets directly; a function of the math module makes a float of any other by itself."""
+    used = set(program.outputs)
+    for step in program.steps:
+        if step.name not in _MATH_FUNCTIONS:
+            used.update(step.arguments)
+    return used
 
 
 def _listed(results: list[str], scalar: bool) -> str:

@@ -106,13 +106,28 @@ def test_functions_are_compiled_once():
 # ------------------------------------------------------------------------------------- plain Python
 
 
+def test_a_zero_is_added_where_nan_could_be_lost():
+    dropped = record(lambda q: np.where(np.cos(q) > 0.5, 1.0, 0.0) + 0.0 * q)
+    assert dropped.python_source().count("return 1.0 if") == 0
+    for program in (dropped, record(lambda q: 3.0), record(lambda q: np.maximum(1.0, 1.0 / q))):
+        for bad in (math.nan, math.inf, -math.inf):
+            assert math.isnan(program.python_function()(bad))
+            assert math.isnan(program.numpy_function()(bad))
+            assert np.isnan(program.numpy_function()(np.array([0.3, bad]))[1])
+    kept = record(lambda a, b: np.sin(a) * 2.0 + np.cos(b), inputs=("a", "b"))
+    assert " - " not in kept.python_source()
+    for bad in (math.nan, math.inf):
+        assert math.isnan(kept.python_function()(bad, 0.3))
+        assert math.isnan(kept.python_function()(0.3, bad))
+
+
 def test_printed_python_reads_like_a_formula():
     source = record(lambda q: 2.0 * np.cos(q) - (1.0 - q) * 3.0).python_source("torque")
     assert source == (
         "def torque(q):\n"
         "    q = float(q)\n"
         "    try:\n"
-        "        return 2.0 * cos(q) - 3.0 * (1.0 - q) + (q - q)\n"
+        "        return 2.0 * cos(q) - 3.0 * (1.0 - q)\n"
         "    except (ArithmeticError, ValueError):\n"
         "        return nan\n"
     )
