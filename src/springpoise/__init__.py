@@ -93,6 +93,7 @@ __all__ = [
     "units",
 ]
 
+_SUBMODULES = ("balance", "gravity", "guard", "linkages", "paths", "springs", "units")
 _HOME = {
     "STANDARD_GRAVITY": "gravity",
     "Actuator": "feedforward",
@@ -128,26 +129,14 @@ _HOME = {
 }
 
 if not TYPE_CHECKING:  # otherwise type checkers would accept every misspelt name
-    _load = names_of(
-        __name__,
-        _HOME,
-        (
-            "balance",
-            "gravity",
-            "guard",
-            "linkages",
-            "paths",
-            "springs",
-            "units",
-        ),
-    )
+    _load = names_of(__name__, _HOME, _SUBMODULES)
 
     def __getattr__(name: str) -> str:
         if name != "__version__":
             return _load(name)
         from importlib.metadata import version
 
-        return version("springpoise")
+        return globals().setdefault("__version__", version("springpoise"))
 
 
 def __dir__() -> list[str]:

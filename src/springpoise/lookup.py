@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from bisect import bisect_right
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
-from numpy.typing import NDArray
 
 from springpoise.errors import InputError
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
 
 __all__ = ["Lookup"]
 

@@ -11,15 +11,30 @@ import pytest
 import springpoise
 
 CLASSES = {
-    "springpoise.linkages": {"Arm", "Body", "Point"},
+    "springpoise.linkages": {
+        "Arm",
+        "Body",
+        "FiveBar",
+        "FourBar",
+        "Link",
+        "PlanarChain",
+        "PlanarLinkage",
+        "Point",
+        "SpatialChain",
+    },
     "springpoise.springs": {
         "CompressionSpring",
         "ConstantForceSpring",
         "ExtensionSpring",
+        "GasSpring",
+        "MeasuredSpring",
+        "RubberTube",
         "TorsionSpring",
         "ZeroLengthSpring",
+        "in_parallel",
+        "in_series",
     },
-    "springpoise.paths": {"Cable", "Disc", "JointTravel", "Straight"},
+    "springpoise.paths": {"Cable", "Disc", "JointTravel", "Spool", "Straight"},
     "springpoise.mechanism": {"Friction", "Mechanism", "SpringMount"},
     "springpoise.feedforward": {"Actuator", "Feedforward", "Motor"},
 }
@@ -54,7 +69,7 @@ def test_the_version_is_that_of_the_distribution() -> None:
     assert springpoise.__version__ == importlib.metadata.version("springpoise")
 
 
-@pytest.mark.parametrize("name", ["Amr", "SpatialChain", "_HOMES", "numpy"])
+@pytest.mark.parametrize("name", ["Amr", "SpatialChian", "_HOMES", "numpy"])
 def test_an_unknown_name(name: str) -> None:
     with pytest.raises(AttributeError, match=rf"module 'springpoise' has no attribute '{name}'"):
         getattr(springpoise, name)

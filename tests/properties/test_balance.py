@@ -206,15 +206,16 @@ def test_no_rate_and_preload_of_a_dense_grid_is_better(norm, arm, mount, travel)
     compression=st.booleans(),
     norm=st.sampled_from(["minimax", "rms"]),
     rigid=st.floats(0.0, 0.3),
+    tension=st.sampled_from([0.0, 3.0]),
 )
-@example(arm=Arm(Body(2.0, (0.35, 0))), free_length=0.1, compression=False, norm="minimax", rigid=0.0)
+@example(arm=Arm(Body(2.0, (0.35, 0))), free_length=0.1, compression=False, norm="minimax", rigid=0.0, tension=0.0)
 def test_a_cut_to_length_fit_is_the_best_and_claims_what_it_gives_even_where_springs_go_slack(
-    arm, free_length, compression, norm, rigid
+    arm, free_length, compression, norm, rigid, tension
 ):
     spring = (
         CompressionSpring(500.0, free_length=free_length, solid_length=0.4 * free_length)
         if compression
-        else ExtensionSpring(500.0, free_length=free_length, initial_tension=3.0)
+        else ExtensionSpring(500.0, free_length=free_length, initial_tension=tension)
     )
     height = -0.3 if compression else 0.3
     path = Straight(Point("ground", (0.02, height)), Point("arm", (0.25, 0.0)))
@@ -225,6 +226,8 @@ def test_a_cut_to_length_fit_is_the_best_and_claims_what_it_gives_even_where_spr
     assert claimed == pytest.approx(_norm(fit.mechanism, q, norm), rel=1e-12)
     assert claimed <= _norm(mech.with_springs(()), q, norm) * (1 + 1e-9)
     assert fit.success or fit.left_out or not fit.settled
+    if tension > 0 and not compression:
+        return  # the load jumps where the spring goes slack: there is no telling where the best cut lies
 
     length = path.length(arm, q)
     low, high = (length.min() - free_length, length.min() - spring.solid_length) if compression else (0.0, length.max())

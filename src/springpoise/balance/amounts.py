@@ -22,6 +22,9 @@ Array = NDArray[np.float64]
 MOST_ROUNDS = 40
 """How often the set of poses in which each spring pulls is guessed again before the fit gives up on it."""
 
+STARTS = 9
+"""From how many rigid lengths a fit of rigid lengths sets out: which springs go slack where makes it uneven."""
+
 NOTHING = 1e-9
 """A spring whose share of the holding torque is nowhere more than this [1] is best left out."""
 
@@ -56,6 +59,8 @@ def best_amounts(mechanism: Mechanism, free: list[int], q: Array, *, norm: str, 
     """The mechanism with the best strengths and preloads of the mounts numbered in ``free``."""
     mounts = {i: _sizable(mechanism.springs[i], preload, mechanism.mount_name(i)) for i in free}
     task = _Task(mechanism, free, q, norm, preload)
+    for i in free:  # a spring that cannot do arrays is named here, before it is wrapped
+        mechanism.springs[i].ask("load", mechanism.springs[i].spring_length(mechanism.linkage, q))
     best = task.best_of(mounts)
     # An initial tension that stays comes with its spring whole or not at all.
     heavy = [i for i, mount in mounts.items() if np.any(task.columns(mount).fixed)]
@@ -78,7 +83,8 @@ def _sizable(mount: SpringMount, preload: str, name: str) -> SpringMount:
         spring = ScaledSpring(spring, 1.0)
     if preload == "mount" and not isinstance(spring, ZeroLengthSpring | ExtensionSpring | CompressionSpring):
         raise InputError(
-            f"preload must be 'spring' or 'none' where a mount holds a {type(mount.spring).__name__} ({name}), got 'mount'"
+            f"preload must be 'spring' or 'none' where a mount holds a {type(mount.spring).__name__} ({name}), "
+            "got 'mount'"
         )
     return attrs.evolve(mount, spring=spring)
 
@@ -138,15 +144,15 @@ class _Task:
         return 0.0, max(0.0, float(np.max(length) - getattr(spring, "free_length", 0.0)))
 
     def _starts(self, mounts: dict[int, SpringMount]) -> Iterator[dict[int, SpringMount]]:
-        """As the mounts are and, where rigid lengths are chosen, with springs that pull in as many poses as can be."""
+        """As the mounts are, and for rigid lengths also from springs that pull everywhere to ones that do not."""
         yield mounts
         if self.preload == "mount":
-            yield {
-                i: attrs.evolve(
-                    mount, rigid_length=self._rigid_lengths(mount)[isinstance(mount.spring, CompressionSpring)]
-                )
-                for i, mount in mounts.items()
-            }
+            ends = {i: self._rigid_lengths(mount) for i, mount in mounts.items()}
+            for share in np.linspace(0.0, 1.0, STARTS):
+                yield {
+                    i: attrs.evolve(mount, rigid_length=float((1 - share) * ends[i][0] + share * ends[i][1]))
+                    for i, mount in mounts.items()
+                }
 
     def _settle(self, mounts: dict[int, SpringMount]) -> Found:
         """Fit again until the poses in which each spring pulls are those that the fit assumed."""

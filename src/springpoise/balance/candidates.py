@@ -81,7 +81,7 @@ class StockSearch:
     pareto: tuple[StockCandidate, ...]
     """Those that no other one beats in worst residual, number of springs and pivot load at once.
 
-    Taken from the best mount of each part and count and the best part of each mount and count.
+    Taken from the candidates above and from the best part of each mount and count.
     """
     considered: int
     """How many candidates were tried."""
@@ -110,7 +110,7 @@ class StockSearch:
 
     @property
     def mechanism(self) -> Mechanism:
-        """The arm with the best candidate's spring on it; raises as :attr:`best`."""
+        """The arm with the best candidate's spring on it; raises as ``best``."""
         return self.best.mechanism
 
     @property
@@ -121,10 +121,12 @@ class StockSearch:
         miss = self.nearest_miss
         if miss is None:
             return f"nothing fits of {self.considered} candidates tried"
-        return f"nothing fits of {self.considered} candidates tried; nearest is {miss.count} x {miss.part}: {miss.lacks}"
+        return (
+            f"nothing fits of {self.considered} candidates tried; nearest is {miss.count} x {miss.part}: {miss.lacks}"
+        )
 
     def require(self) -> StockSearch:
-        """This result, or an error where nothing fits.
+        """The result itself, or an error where nothing fits.
 
         Raises
         ------

@@ -50,13 +50,14 @@ class SpringFit:
             return "no spring at these mounts makes the residual smaller"
         if not self.settled:
             return "the poses in which the springs go slack did not settle; this is the best fit seen on the way"
-        best = "no other rates and preloads have a smaller worst residual" if self.norm == "minimax" else (
-            "no other rates and preloads have a smaller rms residual"
+        what = "worst residual" if self.norm == "minimax" else "rms residual"
+        return (
+            f"no other rates and preloads have a smaller {what}"
+            + " at these mounts and poses, as long as the same springs pull in the same poses"
         )
-        return best + " at these mounts and poses, as long as the same springs pull in the same poses"
 
     def require(self) -> SpringFit:
-        """This result, or an error where it is none.
+        """The result itself, or an error where it is none.
 
         Raises
         ------
@@ -108,7 +109,7 @@ def fit_springs(
     poses; the fit is repeated until the poses it assumed are those that come out.
 
     A spring of your own that has only its three methods is sized as a whole and comes back in a
-    :class:`~springpoise.springs.ScaledSpring`.
+    ``ScaledSpring``.
 
     Parameters
     ----------
@@ -121,8 +122,10 @@ def fit_springs(
         Poses [rad]; None for 181 over the travel.
     preload
         ``"spring"``: an extension spring's initial tension (from 0 to what zero free length needs)
-        and a torsion spring's free angle are chosen too. ``"mount"``: the springs' preload stays
-        and each mount's ``rigid_length`` is chosen. ``"none"``: rates alone.
+        and a torsion spring's free angle (within two turns) are chosen too. ``"mount"``: the
+        springs' preload stays and each mount's ``rigid_length`` is chosen, from 0 on, or for a
+        compression spring so that it never goes solid. ``"none"``: rates alone. A spring with an
+        initial tension that stays is left out where it harms more than it helps.
     fixed
         Names or numbers (from 0 on) of the mounts whose springs stay as they are.
     gravity
@@ -178,8 +181,12 @@ def _free_mounts(mechanism: Mechanism, fixed: Sequence[str | int]) -> list[int]:
         elif isinstance(which, int) and not isinstance(which, bool) and 0 <= which < len(names):
             stay.add(which)
         else:
-            raise InputError(f"fixed must name mounts of the mechanism ({', '.join(names) or 'it has none'}), got {which!r}")
+            raise InputError(
+                f"fixed must name mounts of the mechanism ({', '.join(names) or 'it has none'}), got {which!r}"
+            )
     free = [i for i in range(len(names)) if i not in stay]
     if not free:
-        raise InputError(f"mechanism must have a spring to fit, got {len(names)} mounts of which {len(stay)} stay fixed")
+        raise InputError(
+            f"mechanism must have a spring to fit, got {len(names)} mounts of which {len(stay)} stay fixed"
+        )
     return free

@@ -6,6 +6,7 @@ import sys
 import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
+from importlib import import_module
 from typing import Any
 
 __all__ = ["Progress", "steps"]
@@ -23,7 +24,7 @@ def steps(progress: Progress, total: int, what: str) -> Iterator[Callable[[int],
     if callable(progress):
         yield lambda done: progress(done, total)
         return
-    if progress is False or (progress is None and not sys.stderr.isatty()):
+    if progress is False or (progress is None and not (sys.stderr and sys.stderr.isatty())):
         yield lambda done: None
         return
     bar: Any = None
@@ -33,10 +34,10 @@ def steps(progress: Progress, total: int, what: str) -> Iterator[Callable[[int],
         nonlocal bar
         if bar is None and (progress or time.monotonic() - began > LONG):
             try:
-                from tqdm import tqdm
+                bars = import_module("tqdm")
             except ImportError:
                 return
-            bar = tqdm(total=total, desc=what, unit_scale=True, leave=False)
+            bar = bars.tqdm(total=total, desc=what, unit_scale=True, leave=False)
         if bar is not None:
             bar.update(done - bar.n)
 

@@ -60,7 +60,7 @@ def refined(routing: Routing, start: StockCandidate, box: Box, step: float) -> S
     best = start
     for radius, height in _roundings(found.x, box, step):
         there = _moved(routing, start, radius, height)
-        if not no_margin(there) and there.residual.worst < best.residual.worst:
+        if not no_margin(there) and _has_room(routing, there) and there.residual.worst < best.residual.worst:
             best = there
     return best
 
@@ -73,6 +73,12 @@ def _roundings(place: NDArray[np.float64], box: Box, step: float) -> list[tuple[
         inside = [x for x in around if low - 1e-12 <= x <= high + 1e-12]
         choices.append(sorted(inside) or [float(value)])
     return [(radius, height) for radius in choices[0] for height in choices[1]]
+
+
+def _has_room(routing: Routing, there: StockCandidate) -> bool:
+    """Whether the spring ends before its pulley at every pose."""
+    spring = there.mechanism.springs[-1].spring
+    return float(spring.working_range[1]) - there.stretch_margin <= routing.room(there.anchor_height)  # type: ignore[attr-defined]
 
 
 def _moved(routing: Routing, start: StockCandidate, radius: float, height: float) -> StockCandidate:

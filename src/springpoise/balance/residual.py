@@ -93,6 +93,12 @@ def residual(mechanism: Mechanism, over: Any = None, *, gravity: Any = None) -> 
 
 def poses_over(mechanism: Mechanism, over: Any) -> NDArray[np.float64]:
     """The poses that a solver looks at, as a flat array: those given, or the usual ones over the travel."""
+    joints = mechanism.linkage.joint_count
+    if joints != 1:
+        raise InputError(f"mechanism must have one joint, got {joints}")
+    somewhere = mechanism.holding_torque(0.5 * sum(mechanism.travel_or_turn))
+    if not isinstance(somewhere, float):
+        raise InputError(f"mechanism must be a single one, got fields that are arrays (shape {np.shape(somewhere)})")
     if over is None:
         return mechanism.poses(USUAL_POSES)
     q = np.atleast_1d(np.asarray(units.poses(over, "over"), dtype=np.float64)).ravel()

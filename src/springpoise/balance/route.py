@@ -127,18 +127,18 @@ class Routing:
         return Geometry(
             pull=pull,
             lever=lever,
-            force_x=np.broadcast_to(sum(f.x for f in forces), shape),
-            force_y=np.broadcast_to(sum(f.y for f in forces), shape),
+            force_x=np.broadcast_to(sum(f.force[0] for f in forces), shape),
+            force_y=np.broadcast_to(sum(f.force[1] for f in forces), shape),
             least=pull.min(axis=1),
             greatest=pull.max(axis=1),
-            room=self._room(height),
+            room=self.room(height),
         )
 
     def zero_force_length(self, radii: Array, height: float) -> Array:
         """Length of the path at which a spring behind a pulley would have no force [m]; 0 for a straight one."""
         if self.pulley is None:
             return np.zeros_like(radii)
-        middle = 0.5 * (self.poses[0] + self.poses[-1])
+        middle = 0.5 * float(self.poses.min() + self.poses.max())
         path = self.path(radii, height)
         bare = attrs.evolve(self, pulley=None).path(radii, height)
         linkage = self.mechanism.linkage
@@ -152,7 +152,8 @@ class Routing:
             rigid = zero - float(spring.effective_free_length)
         return SpringMount(spring, self.path(radius, height), count=count, rigid_length=rigid)
 
-    def _room(self, height: float) -> float:
+    def room(self, height: float) -> float:
+        """Length that a spring may take before it meets the pulley [m]; infinite without one."""
         if self.pulley is None:
             return math.inf
         upward = cmath.exp(1j * self.anchor_angle)

@@ -69,7 +69,7 @@ def search_stock(
     arm
         The arm, or a mechanism of one arm with travel, friction and the springs it already has.
     stock
-        The list, or the path of its CSV file (see :func:`read_stock`).
+        The list, or the path of its CSV file (see ``read_stock``).
     attach_radii
         Distances from pivot to attachment on the arm to try [m], a sequence, each > 0.
     anchor_heights
@@ -82,7 +82,7 @@ def search_stock(
         The pulley that springs hide behind; None for springs straight from anchor to arm.
     anchor_angle
         Direction from pivot to anchor on the ground [rad]; by default straight up. The attachment
-        lies where a spring of zero free length would balance every angle.
+        lies where a spring of zero free length would balance the arm's weight at every angle.
     residual_limit
         Greatest worst residual that counts as a fit [N·m]; None for no limit.
     keep
@@ -111,6 +111,8 @@ def search_stock(
     mechanism = as_mechanism(arm)
     if gravity is not None:
         mechanism = attrs.evolve(mechanism, gravity=gravity)
+    if not isinstance(stock, Stock | str | FilePath):
+        raise InputTypeError(f"stock must be a Stock or the path of its CSV file, got {stock!r}")
     listed = stock if isinstance(stock, Stock) else read_stock(stock)
     radii = _grid(attach_radii, "attach_radii")
     heights = _grid(anchor_heights, "anchor_heights")
@@ -155,7 +157,7 @@ class _BestPart(NamedTuple):
     """The best part of one mount and count."""
 
     worst: float
-    count: int
+    springs: int
     pivot_load: float
     candidate: int
     radius: float
@@ -252,7 +254,7 @@ class _Scan:
 
     def front_of_mounts(self) -> list[tuple[int, int, float, float]]:
         """The same of the best parts of each mount and count that no other beats in all respects."""
-        front = pareto_front(self.mounts, lambda one: (one.worst, one.count, one.pivot_load))
+        front = pareto_front(self.mounts, lambda one: (one.worst, one.springs, one.pivot_load))
         return [self._place(one.candidate, one.radius, one.height) for one in front]
 
     def nearest_miss(self) -> StockCandidate | None:
@@ -273,13 +275,13 @@ class _Scan:
 
 
 def _routing(mechanism: Mechanism, poses: Array, anchor_angle: float, pulley: PulleyRoute | None) -> Routing:
-    """Where attachments lie: in the direction that balances every angle for a zero free length."""
+    """Where attachments lie: where a zero free length balances the arm's weight at every angle."""
     torque = np.broadcast_to(mechanism.holding_torque(poses), poses.shape)
     arm = mechanism.linkage
     assert isinstance(arm, Arm)
     gx, gy = mechanism.gravity
     weight = -complex(gx, -gy) * complex(*arm.moment)
-    if weight == 0 or not np.any(np.abs(torque) > 0):
+    if weight == 0 or not np.max(np.abs(torque)) > 1e-12 * abs(weight):
         raise InputError("arm must have something left to balance, got no torque of gravity and springs")
     attach_angle = math.atan2(weight.imag, weight.real) + anchor_angle
     return Routing(mechanism, poses, anchor_angle, math.remainder(attach_angle, 2 * math.pi), pulley)
@@ -295,7 +297,10 @@ def _grid(values: Any, name: str) -> Array:
 
 
 def _counts(counts: Any) -> tuple[int, ...]:
-    items = [counts] if isinstance(counts, int) else list(counts)
+    try:
+        items = list(counts) if np.ndim(counts) else [counts]
+    except (TypeError, ValueError):
+        items = [counts]
     for item in items:
         if isinstance(item, bool) or not isinstance(item, int | np.integer) or item < 1:
             raise InputError(f"counts must be whole numbers >= 1, got {item!r}")

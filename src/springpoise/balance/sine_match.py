@@ -58,11 +58,20 @@ class SineMatch:
         states = mount.state(self.mechanism.linkage, self.mechanism.poses(721), "")
         rows = [
             ("status", self.status),
-            ("rate", f"{number(self.rate, 'N/m')}" + (f", {self.count} springs side by side" if self.count > 1 else "")),
+            (
+                "rate",
+                f"{number(self.rate, 'N/m')}" + (f", {self.count} springs side by side" if self.count > 1 else ""),
+            ),
             ("attach radius", f"{millimetres(self.attach_radius)} at {degrees(self.attach_angle)} on the arm"),
             ("anchor height", f"{millimetres(self.anchor_height)} at {degrees(self.anchor_angle)} on the ground"),
-            ("spring length", f"{millimetres(float(states.length.min()))} to {millimetres(float(states.length.max()))}"),
-            ("load of one spring", f"{number(float(states.load.min()), 'N')} to {number(float(states.load.max()), 'N')}"),
+            (
+                "spring length",
+                f"{millimetres(float(states.length.min()))} to {millimetres(float(states.length.max()))}",
+            ),
+            (
+                "load of one spring",
+                f"{number(float(states.load.min()), 'N')} to {number(float(states.load.max()), 'N')}",
+            ),
             ("residual", str(self.residual)),
         ]
         return "sine match\n" + facts(rows)
@@ -141,7 +150,8 @@ def sine_match(
     lacking, scale = _lacking(mechanism, pull)
     if not abs(lacking) > 1e-12 * scale:
         raise InputError(
-            f"arm must have something left to balance, got a first moment of {abs(lacking):g} N*m for gravity and springs"
+            "arm must have something left to balance, "
+            f"got a first moment of {abs(lacking):g} N*m for gravity and springs"
         )
     if isinstance(count, bool) or not isinstance(count, int) or count < 1:
         raise InputError(f"count must be a whole number >= 1, got {count!r}")
@@ -162,7 +172,7 @@ def sine_match(
     return SineMatch(
         mechanism=balanced,
         rate=k,
-        attach_radius=abs(attach),
+        attach_radius=abs(attach) if b is None else b,
         attach_angle=cmath.phase(attach),
         anchor_height=a,
         anchor_angle=direction,

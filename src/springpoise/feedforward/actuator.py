@@ -5,12 +5,13 @@ from __future__ import annotations
 from typing import Any
 
 import attrs
+import numpy as np
 
 from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError, InputTypeError
 
-__all__ = ["Actuator", "Motor"]
+__all__ = ["Actuator", "Motor", "signal"]
 
 
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)
@@ -27,6 +28,15 @@ class Motor:
     """Torque for one ampere [N·m/A], > 0; in SI units the same number is the back-EMF constant [V·s/rad]."""
     resistance: Carrier = attrs.field(converter=units.ohm, validator=units.positive)
     """Resistance that the voltage sees, winding and leads [Ω], > 0."""
+
+
+def signal(value: Any, unit: str, name: str) -> Any:
+    """A value as it comes in at each call: as a field's, but NaN and infinity pass, and come out as NaN."""
+    if isinstance(value, float):
+        return float(value)
+    if isinstance(value, np.ndarray) and value.dtype.kind in "iuf":
+        return value.astype(np.float64) if value.ndim else float(value)
+    return units.scalar_si(value, unit, name)
 
 
 def _motor(value: Any) -> Motor | None:
@@ -78,11 +88,11 @@ class Actuator:
 
     def joint_angle(self, motor_angle: Carrier) -> Carrier:
         """Angle of the joint [rad] where the motor's own angle reads ``motor_angle`` [rad]."""
-        return self.zero + self.sign * motor_angle / self.ratio
+        return self.zero + self.sign * signal(motor_angle, "rad", "motor_angle") / self.ratio
 
     def motor_angle(self, joint_angle: Carrier) -> Carrier:
         """The motor's own angle [rad] where the joint stands at ``joint_angle`` [rad]."""
-        return self.sign * self.ratio * (joint_angle - self.zero)
+        return self.sign * self.ratio * (signal(joint_angle, "rad", "joint_angle") - self.zero)
 
     def motor_torque(self, torque: Carrier, *, moving: Carrier = 0) -> Carrier:
         """Torque of the motor [N·m, in the motor's own sense] that gives ``torque`` at the joint.
@@ -94,6 +104,7 @@ class Actuator:
         moving
             Direction of the commanded motion: +1 counter-clockwise, -1 clockwise, 0 at rest.
         """
+        torque, moving = signal(torque, "N*m", "torque"), signal(moving, "1", "moving")
         power = torque * moving
         xp = namespace(power, torque)
         driving, driven_back = 1.0 / self.efficiency, self.efficiency
@@ -101,7 +112,7 @@ class Actuator:
         return self.sign * torque * gear / self.ratio
 
     def current(self, torque: Carrier, *, moving: Carrier = 0) -> Carrier:
-        """Motor current [A] for ``torque`` [N·m] at the joint; arguments as :meth:`motor_torque`.
+        """Motor current [A] for ``torque`` [N·m] at the joint; arguments as ``motor_torque``.
 
         Raises
         ------
@@ -127,6 +138,7 @@ class Actuator:
         InputError
             The actuator was given no motor.
         """
+        velocity = signal(velocity, "rad/s", "velocity")
         if moving is None:
             moving = namespace(velocity).sign(velocity)
         motor_rate = self.sign * self.ratio * velocity

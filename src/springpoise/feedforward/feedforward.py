@@ -3,17 +3,18 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import Any, Literal, TypeAlias, overload
+from typing import TYPE_CHECKING, Any, Literal, TypeAlias, overload
 
 import attrs
 import numpy as np
 
-from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError, InputTypeError
-from springpoise.feedforward.actuator import Actuator
+from springpoise.feedforward.actuator import Actuator, signal
 from springpoise.mechanism import Mechanism
-from springpoise.tape import Program, record
+
+if TYPE_CHECKING:  # recording is loaded when it is asked for
+    from springpoise.tape import Program
 
 __all__ = ["Feedforward"]
 
@@ -99,12 +100,12 @@ class Feedforward:
     @overload
     def current(self, q: Any, *, moving: Any = 0, gravity: Any = None) -> Any: ...
     def current(self, q: Any, *, moving: Any = 0, gravity: Any = None) -> Any:
-        """Motor current that holds or slowly moves the joint [A]; arguments as :meth:`torque`.
+        """Motor current that holds or slowly moves the joint [A]; arguments as ``torque``.
 
         Raises
         ------
         InputError
-            As :meth:`torque`, or the actuator has no motor.
+            As ``torque``, or the actuator has no motor.
         """
         way = _direction(moving)
         return self.actuator.current(self.torque(q, moving=way, gravity=gravity), moving=way)
@@ -125,14 +126,14 @@ class Feedforward:
         moving
             Direction of the commanded motion; None for that of ``velocity``.
         gravity
-            As in :meth:`torque`.
+            As in ``torque``.
 
         Raises
         ------
         InputError
-            As :meth:`current`.
+            As ``current``.
         """
-        rate = _velocity(velocity)
+        rate = signal(velocity, "rad/s", "velocity")
         way = namespace(rate).sign(rate) if moving is None else _direction(moving)
         torque = self.mechanism.holding_torque(q, gravity)
         with np.errstate(invalid="ignore"):
@@ -141,15 +142,19 @@ class Feedforward:
             return self.actuator.voltage(torque, velocity=rate, moving=way) + not_finite
 
     def program(self, output: Output = "torque", *, moving: int = 0, gravity_per_call: bool = False) -> Program:
-        """The computation as a recorded straight-line program; arguments as :meth:`compile`."""
+        """The computation as a recorded straight-line program; arguments as ``compile``."""
+        from springpoise.tape import record
+
         if output not in ("torque", "current", "voltage"):
             raise InputError(f"output must be 'torque', 'current' or 'voltage', got {output!r}")
         way = _direction(moving)
         if not isinstance(way, float):
             raise InputTypeError(f"moving must be one of -1, 0, +1 for a compiled function, got {moving!r}")
-        inputs = ["q"] if self.mechanism.linkage.joint_count == 1 else [
-            f"q{joint}" for joint in range(self.mechanism.linkage.joint_count)
-        ]
+        inputs = (
+            ["q"]
+            if self.mechanism.linkage.joint_count == 1
+            else [f"q{joint}" for joint in range(self.mechanism.linkage.joint_count)]
+        )
         joints = len(inputs)
         if output == "voltage":
             inputs.append("velocity")
@@ -160,7 +165,7 @@ class Feedforward:
             q = values[0] if joints == 1 else tuple(values[:joints])
             gravity = tuple(values[-2:]) if gravity_per_call else None
             if output == "voltage":
-                return self.voltage(q, velocity=values[joints], gravity=gravity)
+                return self.voltage(q, velocity=values[joints], moving=way or None, gravity=gravity)
             if output == "current":
                 return self.current(q, moving=way, gravity=gravity)
             return self.torque(q, moving=way, gravity=gravity)
@@ -184,9 +189,10 @@ class Feedforward:
         ----------
         output
             ``"torque"`` [N·m] and ``"current"`` [A]: a function of ``q``. ``"voltage"`` [V]: a
-            function of ``q`` and ``velocity``, with friction by the sign of the velocity.
+            function of ``q`` and ``velocity``.
         moving
-            Direction of the commanded motion that is built in: +1, -1, or 0 for at rest.
+            Direction of the commanded motion that is built in: +1, -1, or 0 for at rest; for
+            ``"voltage"`` 0 stands for the direction of the velocity.
         arrays
             False for floats in, float out. True for NumPy arrays of any shape, computed in
             blocks that stay in the cache.
@@ -215,19 +221,10 @@ def _direction(moving: Any) -> Any:
             return float(moving)
     elif isinstance(moving, np.ndarray | list | tuple):
         ways = np.asarray(moving)
+        if not ways.ndim:
+            return _direction(ways[()])
         if ways.dtype.kind in "iuf" and np.all(np.isin(ways, (-1, 0, 1))):
             return ways.astype(np.float64)
     elif hasattr(type(moving), "__array_namespace__"):
         return moving
     raise InputError(f"moving must be -1, 0 or +1, got {moving!r}")
-
-
-def _velocity(velocity: Any) -> Any:
-    if isinstance(velocity, float) or (
-        hasattr(type(velocity), "__array_namespace__") and not isinstance(velocity, np.ndarray)
-    ):
-        return velocity
-    if isinstance(velocity, np.ndarray) and velocity.dtype.kind in "iuf":
-        return velocity.astype(np.float64)
-    return units.radian_per_second(velocity, "velocity")
-

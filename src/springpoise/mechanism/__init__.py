@@ -1,8 +1,43 @@
-"""A mechanism: linkage, springs, friction and travel together, and all that follows from them."""
+"""A mechanism: linkage, springs, friction and travel together, and all that follows from them.
 
-from springpoise.mechanism.equilibria import Equilibria, Equilibrium
-from springpoise.mechanism.friction import Friction
-from springpoise.mechanism.mechanism import Mechanism
-from springpoise.mechanism.mount import SpringMount, SpringState
+The names below are loaded when they are first used.
+"""
 
-__all__ = ["Equilibria", "Equilibrium", "Friction", "Mechanism", "SpringMount", "SpringState"]
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from springpoise.lazy import names_of
+
+if TYPE_CHECKING:
+    from springpoise.mechanism.equilibria import Equilibria as Equilibria
+    from springpoise.mechanism.equilibria import Equilibrium as Equilibrium
+    from springpoise.mechanism.friction import Friction as Friction
+    from springpoise.mechanism.mechanism import Mechanism as Mechanism
+    from springpoise.mechanism.mount import SpringMount as SpringMount
+    from springpoise.mechanism.states import SpringState as SpringState
+
+__all__ = [
+    "Equilibria",
+    "Equilibrium",
+    "Friction",
+    "Mechanism",
+    "SpringMount",
+    "SpringState",
+]
+
+_HOME = {
+    "Equilibria": "equilibria",
+    "Equilibrium": "equilibria",
+    "Friction": "friction",
+    "Mechanism": "mechanism",
+    "SpringMount": "mount",
+    "SpringState": "states",
+}
+
+if not TYPE_CHECKING:  # otherwise type checkers would accept every misspelt name
+    __getattr__ = names_of(__name__, _HOME)
+
+
+def __dir__() -> list[str]:
+    return sorted(__all__)

@@ -21,28 +21,29 @@ _Method = TypeVar("_Method", bound=Callable[..., Any])
 def at_poses(joint_axes: int) -> Callable[[_Method], _Method]:
     """Wraps a method of poses: converts ``q`` and ``gravity`` once, and lets no bad pose give a number.
 
-    A pose that is NaN or infinite gives NaN, whatever a formula makes of it on the way. With
-    several joints, results have ``joint_axes`` axes of joints behind those of the poses.
+    A pose that is NaN or infinite gives NaN, whatever a formula makes of it on the way; so does one
+    at which a loop of the linkage cannot close, where that is not an error. With several joints,
+    results have ``joint_axes`` axes of joints behind those of the poses.
     """
 
     def wrap(method: _Method) -> _Method:
         @functools.wraps(method)
         def convert(self: Any, q: Any, gravity: Any = None) -> Any:
-            angles = units.poses(q)
+            angles = _poses(self.linkage, q)
             pull = self.gravity if gravity is None else _gravity(gravity, len(self.gravity))
             count = self.linkage.joint_count
             if type(angles) is float and count == 1:
                 good = math.isfinite(angles)
-                if good:
-                    _check_loops(self.linkage, angles)
+                closed = _closed(self.linkage, angles) if good else True
                 value = method(self, angles if good else 0.0, pull)
-                return value if good and type(value) is float else _at_one_pose(value, good)
+                good = good and closed is True
+                return value if good and type(value) is float else _at_one_pose(_where(closed, value), good)
             if _follows_along(angles):
-                return method(self, angles, pull)
+                return _where(_closed(self.linkage, angles), method(self, angles, pull))
             _check_shape(angles, count)
-            _check_loops(self.linkage, angles)
             with np.errstate(all="ignore"):
-                return _nan_where_not_finite(method(self, angles, pull), angles, count, joint_axes)
+                closed = _closed(self.linkage, angles)
+                return _nan_where_not_finite(method(self, angles, pull), angles, closed, count, joint_axes)
 
         return cast("_Method", convert)
 
@@ -52,7 +53,9 @@ def at_poses(joint_axes: int) -> Callable[[_Method], _Method]:
 def _gravity(value: Any, dimensions: int) -> tuple[Any, ...]:
     pull = units.acceleration(value, "gravity")
     if len(pull) != dimensions:
-        raise InputError(f"gravity must be {dimensions} components in m/s**2 for this linkage, got {len(pull)}: {value!r}")
+        raise InputError(
+            f"gravity must be {dimensions} components in m/s**2 for this linkage, got {len(pull)}: {value!r}"
+        )
     return pull
 
 
@@ -62,19 +65,67 @@ def _check_shape(q: Any, count: int) -> None:
         raise InputError(f"q must be of shape (..., {count}) for {count} joints, got shape {shape}")
 
 
-def _check_loops(linkage: Any, q: Any) -> None:
-    """Refuses poses at which a loop of the linkage cannot close, unless it was told to give NaN there."""
-    if getattr(linkage, "unreachable", "nan") != "error":
-        return
-    with np.errstate(all="ignore"):
-        missing = np.asarray(linkage.missing(q))
-    if missing.size and np.nanmax(missing, initial=-math.inf) > 0:
-        at = np.unravel_index(int(np.nanargmax(missing)), missing.shape)
-        pose = np.asarray(q)[at] if missing.ndim else np.asarray(q)
-        raise InputError(
-            f"q must be poses at which every loop closes, got {np.degrees(pose)} deg, where {1e3 * missing[at]:.4g} mm "
-            "are missing; ask for NaN there with unreachable='nan'"
-        )
+def _poses(linkage: Any, q: Any) -> Any:
+    """Poses as SI numbers; a prismatic joint takes lengths."""
+    kinds: tuple[str, ...] = getattr(linkage, "joint_units", ())
+    if "m" not in kinds:
+        return units.poses(q)
+    if len(kinds) == 1:
+        return units.scalar_si(q, kinds[0], "q") if _states_unit(q) else units.poses(q)
+    if isinstance(q, tuple | list) and len(q) == len(kinds) and any(map(_states_unit, q)):
+        q = [units.scalar_si(v, unit, "q") if _states_unit(v) else v for v, unit in zip(q, kinds, strict=True)]
+    return units.poses(q)
+
+
+def _states_unit(value: Any) -> bool:
+    return isinstance(value, str) or hasattr(value, "m_as")
+
+
+def _closed(linkage: Any, q: Any) -> Any:
+    """Whether every loop of the linkage closes, pose by pose; plain True for a linkage without loops.
+
+    Refuses numbers at which one does not, unless the linkage was told to give NaN there.
+    """
+    missing = getattr(linkage, "missing", None)
+    if missing is None:
+        return True
+    lacking = missing(q)
+    if isinstance(lacking, int | float | np.ndarray) or not _follows_along(lacking):
+        lacks = np.asarray(lacking)
+        if getattr(linkage, "unreachable", "error") == "error" and np.any(lacks > 0.0):
+            _refuse(linkage, q, lacks)
+        if lacks.ndim == 0:
+            return bool(lacks <= 0.0)
+    return lacking <= 0.0
+
+
+def _refuse(linkage: Any, q: Any, missing: Any) -> None:
+    """Names the worst pose; of several builds, no pose."""
+    worst = 1e3 * np.max(missing, initial=0.0, where=np.isfinite(missing))
+    poses = np.asarray(q)
+    shape = poses.shape if linkage.joint_count == 1 else poses.shape[:-1]
+    where = ""
+    if missing.shape == shape:
+        at = np.unravel_index(int(np.argmax(np.where(missing > 0.0, missing, 0.0))), shape) if shape else ()
+        kinds = getattr(linkage, "joint_units", ("rad",) * linkage.joint_count)
+        pose = [
+            f"{math.degrees(value):.6g} deg" if unit == "rad" else f"{1e3 * value:.6g} mm"
+            for value, unit in zip(np.atleast_1d(poses[at]).tolist(), kinds, strict=True)
+        ]
+        where = f"{', '.join(pose)}, where "
+    raise InputError(
+        f"q must be poses at which every loop closes, got {where}{worst:.4g} mm missing; "
+        "ask for NaN there with unreachable='nan'"
+    )
+
+
+def _where(closed: Any, value: Any) -> Any:
+    """``value``, NaN where a loop does not close."""
+    if closed is True:
+        return value
+    if isinstance(value, tuple):
+        return tuple(_where(closed, item) for item in value)
+    return namespace(value, closed).where(closed, value, math.nan)
 
 
 def _follows_along(q: Any) -> bool:
@@ -92,16 +143,18 @@ def _at_one_pose(value: Any, good: bool) -> Any:
     return plain if good else plain * math.nan
 
 
-def _nan_where_not_finite(value: Any, q: Any, joints: int, joint_axes: int = 0) -> Any:
-    """``value`` in the shape of the poses, NaN where one is not finite."""
+def _nan_where_not_finite(value: Any, q: Any, closed: Any, joints: int, joint_axes: int) -> Any:
+    """``value`` in the shape of the poses, NaN where one is not finite or a loop does not close."""
     if isinstance(value, tuple):
-        return tuple(_nan_where_not_finite(item, q, joints, joint_axes) for item in value)
+        return tuple(_nan_where_not_finite(item, q, closed, joints, joint_axes) for item in value)
     xp = namespace(q)
     fine = xp.isfinite(q)
     if joints > 1:
         fine = xp.all(fine, axis=-1)
-        for _ in range(joint_axes):
-            fine = xp.expand_dims(fine, axis=-1)
+    if closed is not True:
+        fine = xp.logical_and(fine, xp.asarray(closed))
+    for _ in range(joint_axes if joints > 1 else 0):
+        fine = xp.expand_dims(fine, axis=-1)
     if np.shape(value) == fine.shape and bool(xp.all(fine)):
         return value
     # Numbers alone would not do for every namespace, and a result may not be writable.

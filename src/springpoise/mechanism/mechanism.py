@@ -2,24 +2,21 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Sequence
-from typing import Any, overload
+from typing import TYPE_CHECKING, Any, TypeAlias, overload
 
 import attrs
 import numpy as np
-from numpy.typing import NDArray
 
 from springpoise import units
 from springpoise.carriers import Carrier, joints_of, namespace
-from springpoise.errors import InputError, InputTypeError, UnitError
+from springpoise.errors import InputError, InputTypeError
 from springpoise.gravity import STANDARD_GRAVITY
 from springpoise.linkages.body import Body, Point
 from springpoise.linkages.protocol import Linkage
 from springpoise.mechanism.at_poses import at_poses
-from springpoise.mechanism.equilibria import Equilibria, find_equilibria
 from springpoise.mechanism.friction import Friction
-from springpoise.mechanism.mount import SpringMount, SpringState
+from springpoise.mechanism.mount import SpringMount
 from springpoise.mechanism.sums import (
     Gravity,
     friction_bands,
@@ -31,11 +28,18 @@ from springpoise.mechanism.sums import (
     spring_energy,
     spring_torques,
 )
+from springpoise.mechanism.travel import joint_units_of, range_or_turn, spread, travel_of
 from springpoise.units import ScalarLike
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    from springpoise.mechanism.equilibria import Equilibria
+    from springpoise.mechanism.states import SpringState
 
 __all__ = ["Mechanism"]
 
-Array = NDArray[np.float64]
+Array: TypeAlias = "NDArray[np.float64]"
 
 PAYLOAD = "payload"
 """Name of the body that stands for a payload."""
@@ -65,24 +69,6 @@ def _friction(value: Any) -> Friction | tuple[Friction, ...]:
 
 def _gravity(value: Any) -> Any:
     return None if value is None else units.acceleration(value, "Mechanism.gravity")
-
-
-def _travel(value: Any) -> Any:
-    """One range, or for several joints a range each; None for not given."""
-    if value is None:
-        return None
-    items = value if isinstance(value, Sequence) and not isinstance(value, str) else None
-    if items and all(item is None or (isinstance(item, Sequence | np.ndarray) and not isinstance(item, str)) for item in items):
-        return tuple(None if item is None else _joint_range(item) for item in items)
-    return units.radian_pair(value, "Mechanism.travel")
-
-
-def _joint_range(value: Any) -> tuple[Any, Any]:
-    """The range of one of several joints: angles in rad, or ways in m for a prismatic joint."""
-    try:
-        return units.pair(value, "rad", "Mechanism.travel")
-    except UnitError:
-        return units.pair(value, "m", "Mechanism.travel")
 
 
 @attrs.frozen(field_transformer=units.named_fields)
@@ -120,7 +106,7 @@ class Mechanism:
     """The spring mounts: one or a sequence of them."""
     friction: Friction | tuple[Friction, ...] = attrs.field(default=Friction(), converter=_friction, kw_only=True)
     """Friction of the joint, or of every joint alike; or a sequence with one for each joint."""
-    travel: Any = attrs.field(default=None, converter=_travel, kw_only=True)
+    travel: Any = attrs.field(default=None, kw_only=True)
     """Range of the joint (from, to) [rad]; for several joints a range each [rad, or m for a prismatic joint].
 
     None for not given: a full turn of a revolute joint.
@@ -130,19 +116,15 @@ class Mechanism:
 
     def __attrs_post_init__(self) -> None:
         dimensions, count = getattr(self.linkage, "dimensions", 2), self.linkage.joint_count
-        if self.gravity is None:
+        given: Any = self.gravity
+        if given is None:
             # The default depends on the linkage; no call ever sees the None.
             object.__setattr__(self, "gravity", (0.0,) * (dimensions - 1) + (-STANDARD_GRAVITY,))
         if len(self.gravity) != dimensions:
             raise InputError(
                 f"Mechanism.gravity must be {dimensions} components in m/s**2 for this linkage, got {self.gravity}"
             )
-        ranges = () if self.travel is None else self.travel if _is_nested(self.travel) else (self.travel,)
-        for one in ranges:
-            if one is not None and not one[0] < one[1]:
-                raise InputError(f"Mechanism.travel must be (lower, higher) rad, got {one}")
-        if ranges and len(ranges) != count:
-            raise InputError(f"Mechanism.travel must be a range for each of {count} joints, got {len(ranges)}")
+        object.__setattr__(self, "travel", travel_of(self.travel, joint_units_of(self.linkage)))  # rad or m, by joint
         if isinstance(self.friction, tuple) and len(self.friction) != count:
             raise InputError(f"Mechanism.friction must be one for each of {count} joints, got {len(self.friction)}")
         for index, mount in enumerate(self.springs):
@@ -208,7 +190,11 @@ class Mechanism:
             # A torque that is NaN has no slope, even where NaN entered the sum as a constant.
             slopes = [t.slope + 0.0 * t.value if isinstance(t, Dual) else 0.0 * (t + joints[0]) for t in torques]
             columns.append(joined(slopes))
-        return columns[0] if count == 1 else namespace(*columns).stack(columns, axis=-1)
+        if count == 1:
+            return columns[0]
+        if isinstance(columns[0], tuple):  # recorded variables, which do not stack
+            return tuple(zip(*columns, strict=True))
+        return namespace(*columns).stack(columns, axis=-1)
 
     @overload
     def friction_band(self, q: float | str, gravity: Any = None) -> float: ...
@@ -262,14 +248,13 @@ class Mechanism:
     def pivot_load(self, q: float | str, gravity: Any = None) -> float: ...
     @overload
     def pivot_load(self, q: Any, gravity: Any = None) -> Any: ...
-    @at_poses(1)
     def pivot_load(self, q: Any, gravity: Any = None) -> Any:
         """Magnitude of the bearing force at the pivot at rest [N].
 
         For several pivots along the last axis, in the order of ``linkage.pivots``; raises as
         ``pivot_force``.
         """
-        return joined([magnitude(force) for force in pivot_forces(self, q, gravity)])
+        return joined(self._pivot_loads(q, gravity))
 
     def spring_states(self, q: Any) -> tuple[SpringState, ...]:
         """For each mount, the spring's length, load, energy and margin to its working range.
@@ -279,6 +264,8 @@ class Mechanism:
         q
             Poses [rad], any shape; each value of a state has that shape.
         """
+        from springpoise.mechanism.states import SpringState
+
         rows = self._state_values(q)
         return tuple(SpringState(self.mount_name(i), *values) for i, values in enumerate(rows))
 
@@ -293,6 +280,8 @@ class Mechanism:
         InputError
             The linkage has more than one joint.
         """
+        from springpoise.mechanism.equilibria import find_equilibria
+
         if self.linkage.joint_count != 1:
             raise InputError(f"Mechanism.equilibria must have one joint, got {self.linkage.joint_count}")
         poses = self.poses(721)
@@ -315,10 +304,17 @@ class Mechanism:
 
     @property
     def travel_or_turn(self) -> Any:
-        """The travel, with a full turn from -π to π where none was given [rad]; for n joints n ranges."""
-        if self.linkage.joint_count == 1:
-            return _range(self.travel[0] if _is_nested(self.travel) else self.travel)
-        return tuple(_range(one) for one in self.travel or (None,) * self.linkage.joint_count)
+        """The travel, with a full turn from -π to π where none was given [rad, or m]; for n joints n ranges.
+
+        Raises
+        ------
+        InputError
+            A prismatic joint has no travel.
+        """
+        kinds = joint_units_of(self.linkage)
+        if len(kinds) == 1:
+            return range_or_turn(self.travel, kinds[0])
+        return tuple(map(range_or_turn, self.travel or (None,) * len(kinds), kinds))
 
     @property
     def joint_frictions(self) -> tuple[Friction, ...]:
@@ -326,7 +322,7 @@ class Mechanism:
         return self.friction if isinstance(self.friction, tuple) else (self.friction,) * self.linkage.joint_count
 
     def poses(self, count: int = 181) -> Array:
-        """``count`` poses over the travel [rad].
+        """``count`` poses over the travel [rad, or m for prismatic joints].
 
         One joint: evenly spaced, both ends included, shape (count,). Several: spread evenly
         through the box of the travels by a sequence that needs no seed, shape (count, n).
@@ -334,9 +330,10 @@ class Mechanism:
         if isinstance(count, bool) or not isinstance(count, int) or count < 2:
             raise InputError(f"count must be a whole number >= 2, got {count!r}")
         if self.linkage.joint_count == 1:
-            return np.linspace(*self.travel_or_turn, count)
+            first, last = self.travel_or_turn
+            return np.linspace(float(first), float(last), count)
         low, high = np.array(self.travel_or_turn).T
-        return np.asarray(low + (high - low) * _spread(count, low.size))
+        return np.asarray(low + (high - low) * spread(count, low.size))
 
     def peak_gravity_torque(self, gravity: Any = None) -> Any:
         """Greatest gravity torque over the travel [N·m], >= 0: what residuals are compared with; for n joints (n,)."""
@@ -395,27 +392,11 @@ class Mechanism:
         states = [mount.state(self.linkage, q, "") for mount in self.springs]
         return tuple((state.length, state.load, state.energy, state.margin) for state in states)
 
+    @at_poses(0)
+    def _pivot_loads(self, q: Any, gravity: Any = None) -> tuple[Any, ...]:
+        return tuple(magnitude(force) for force in pivot_forces(self, q, gravity))
+
     def _holding_torques(self, q: Carrier, gravity: Gravity) -> list[Carrier]:
         pulled = gravity_torques(self, q, gravity)
         sprung = spring_torques(self, q)
         return [-(g + s) for g, s in zip(pulled, sprung, strict=True)]
-
-
-def _is_nested(travel: Any) -> bool:
-    return bool(travel) and (travel[0] is None or isinstance(travel[0], tuple))
-
-
-def _range(travel: Any) -> tuple[float, float]:
-    return (-math.pi, math.pi) if travel is None else travel
-
-
-def _spread(count: int, dimensions: int) -> Array:
-    """Points that fill the unit box evenly: multiples of irrational steps, modulo one.
-
-    Roberts, M. (2018), the generalised golden ratio: steps 1/φ, 1/φ², ... with φ^(d+1) = φ + 1.
-    """
-    ratio = 2.0
-    for _ in range(64):
-        ratio = (1.0 + ratio) ** (1.0 / (dimensions + 1))
-    steps = ratio ** -np.arange(1.0, dimensions + 1)
-    return np.asarray((0.5 + np.arange(count)[:, None] * steps) % 1.0)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import attrs
 import numpy as np
@@ -16,7 +16,10 @@ from springpoise.linkages.protocol import Linkage, PointMass
 from springpoise.paths.protocol import Path, friction_gradient_of
 from springpoise.springs.protocol import Spring, hysteresis_of, spring_like, working_range_of
 
-__all__ = ["SpringMount", "SpringState"]
+if TYPE_CHECKING:
+    from springpoise.mechanism.states import SpringState
+
+__all__ = ["SpringMount"]
 
 
 def _spring(value: Any) -> Any:
@@ -36,22 +39,6 @@ def _count(value: Any) -> Any:
     if isinstance(value, bool) or not isinstance(value, int | np.integer) or value < 1:
         raise InputTypeError(f"SpringMount.count must be a whole number >= 1, got {value!r}")
     return int(value)
-
-
-@attrs.frozen
-class SpringState:
-    """How one mount's spring is at some pose; the values of one spring of it, whatever ``count``."""
-
-    name: str
-    """Name of the mount."""
-    length: Any
-    """The spring's own length [m], or angle [rad]."""
-    load: Any
-    """Load of one spring [N, or N·m]; positive pulls the ends together."""
-    energy: Any
-    """Energy stored in one spring [J]."""
-    margin: Any
-    """Distance to the nearer end of the working range [m or rad]; negative outside, infinite without limits."""
 
 
 @attrs.frozen(field_transformer=units.named_fields)
@@ -77,7 +64,9 @@ class SpringMount:
     The spring's own length is the path's length less this. Negative for a spring that is longer
     than its path, as a compression spring seated behind a point is.
     """
-    moving_mass: Carrier = attrs.field(default=0.0, converter=units.kilogram, validator=units.not_negative, kw_only=True)
+    moving_mass: Carrier = attrs.field(
+        default=0.0, converter=units.kilogram, validator=units.not_negative, kw_only=True
+    )
     """Mass of one spring that is carried between the ends of a straight path [kg]: half of it weighs on each end.
 
     A spring that lies on the ground behind a pulley moves nothing and needs none.
@@ -149,6 +138,8 @@ class SpringMount:
 
     def state(self, linkage: Linkage, q: Carrier, name: str) -> SpringState:
         """Length, load, energy and margin of one spring of the mount."""
+        from springpoise.mechanism.states import SpringState
+
         x = self.spring_length(linkage, q)
         low, high = working_range_of(self.spring)
         margin = namespace(x, low, high).minimum(x - low, high - x)

@@ -57,7 +57,8 @@ def friction_bands(mechanism: Mechanism, q: Carrier, gravity: Gravity) -> list[C
     frictions = mechanism.joint_frictions
     forces: dict[str, Carrier] = {}
     if any(friction.depends_on_load for friction in frictions):
-        forces = dict(zip(linkage.pivots, pivot_forces(mechanism, q, gravity), strict=True))
+        loads = pivot_forces(mechanism, q, gravity)
+        forces = dict(zip(getattr(linkage, "pivots", _joint_names(linkage)), loads, strict=True))
     totals = []
     for angle, name, friction in zip(joints_of(q, linkage.joint_count), _joint_names(linkage), frictions, strict=True):
         totals.append(_joint_friction(friction, forces.get(name)) + 0.0 * angle)

@@ -18,6 +18,9 @@ __all__ = ["multiplied_out"]
 Polynomial: TypeAlias = dict[tuple[int, ...], float]
 """Coefficients by the nodes that are multiplied, in order; the empty product is the constant."""
 
+WELL_AWAY = 1.01
+"""A constant over the greatest that is taken from it [1]: at most a hundred times the rounding is let in."""
+
 MOST_TERMS = 2
 """A sum that keeps more linear terms than this is left as it was written."""
 
@@ -26,11 +29,12 @@ def multiplied_out(tape: Tape, name: str, x: int, y: int) -> int | None:
     """A shorter node for ``x + y`` or ``x - y``, or None where multiplying out saves nothing."""
     left, right = _polynomial(tape, x), _polynomial(tape, y)
     shared = left.keys() & right.keys() - {()}
-    if not shared:
-        return None
     total = dict(left)
     for product, coefficient in right.items():
         total[product] = total.get(product, 0.0) + (coefficient if name == "add" else -coefficient)
+    circle = _circle(tape, total)
+    if not (shared or circle):
+        return None
     total = {product: coefficient for product, coefficient in total.items() if coefficient != 0.0}
     linear = [product for product in total if product]
     if any(len(product) > 1 for product in linear) or len(linear) > MOST_TERMS:
@@ -40,6 +44,30 @@ def multiplied_out(tape: Tape, name: str, x: int, y: int) -> int | None:
         term = tape.operation("multiply", (tape.constant(total[product]), product[0]))
         result = tape.operation("add", (result, term))
     return result
+
+
+def _circle(tape: Tape, total: Polynomial) -> bool:
+    """Replaces equal squares of a sine and a cosine of one angle by their sum, one, where no digits are lost.
+
+    That is so where what remains stays well away from zero: the square of a length that never
+    gets near to nothing, by the law of cosines.
+    """
+    squares = {product[0]: c for product, c in total.items() if len(product) == 2 and product[0] == product[1]}
+    if len(squares) != 2 or any(len(product) > 1 and product[0] != product[1] for product in total):
+        return False
+    (first, a), (last, b) = squares.items()
+    names = {tape.nodes[first][0], tape.nodes[last][0]}
+    if names != {"sin", "cos"} or tape.nodes[first][1] != tape.nodes[last][1] or a != b:
+        return False
+    linear = [product for product in total if len(product) == 1]
+    if any(tape.nodes[product[0]][0] not in names for product in linear):
+        return False
+    constant = a + total.get((), 0.0)
+    if not constant > WELL_AWAY * sum(abs(total[product]) for product in linear):
+        return False
+    del total[first, first], total[last, last]
+    total[()] = constant
+    return True
 
 
 def _polynomial(tape: Tape, index: int) -> Polynomial:

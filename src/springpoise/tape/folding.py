@@ -179,6 +179,9 @@ def _sum(name: str) -> Fold:
         inner = _inside(tape, x, "negative")
         if inner is not None and name == "add":
             return tape.operation("subtract", (y, inner[0]))
+        inner = _inside(tape, y, "add")
+        if name == "add" and inner is not None and _scalar(tape, x) is not None and _scalar(tape, inner[0]) is not None:
+            return tape.operation("add", (tape.operation("add", (x, inner[0])), inner[1]))
         shorter = multiplied_out(tape, name, x, y)
         if shorter is not None:
             return shorter

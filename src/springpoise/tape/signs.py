@@ -48,6 +48,8 @@ def _judge(tape: Tape, index: int) -> int:
         result = signs[0]
     elif name == "add":
         result = max(signs) if min(signs) >= NONNEGATIVE else ANY
+        if result == ANY and _outweighs(tape, arguments):
+            result = POSITIVE
     elif name == "maximum":
         result = max(signs)
     elif name == "minimum":
@@ -55,3 +57,26 @@ def _judge(tape: Tape, index: int) -> int:
     elif name == "where":
         result = min(signs[1:])
     return result
+
+
+def _outweighs(tape: Tape, arguments: tuple[int, ...]) -> bool:
+    """Whether a sum is a number and smaller multiples of sines and cosines."""
+    least = 0.0
+    todo = list(arguments)
+    while todo:
+        name, inner, value = tape.nodes[todo.pop()]
+        if name == "constant" and isinstance(value, float):
+            least += value
+        elif name == "add":
+            todo += inner
+        elif name in {"sin", "cos"}:
+            least -= 1.0
+        elif (
+            name == "multiply"
+            and tape.nodes[inner[1]][0] in {"sin", "cos"}
+            and isinstance(tape.nodes[inner[0]][2], float)
+        ):
+            least -= abs(tape.nodes[inner[0]][2])
+        else:
+            return False
+    return least > 0.0

@@ -7,6 +7,9 @@ outside this folder knows that pint exists, and pint is imported only when a str
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
+from springpoise.lazy import names_of
 from springpoise.units.convert import DEGREES_SUSPECTED as DEGREES_SUSPECTED
 from springpoise.units.convert import QuantityLike as QuantityLike
 from springpoise.units.convert import ScalarLike as ScalarLike
@@ -50,7 +53,11 @@ from springpoise.units.fields import named_fields as named_fields
 from springpoise.units.fields import not_negative as not_negative
 from springpoise.units.fields import not_zero as not_zero
 from springpoise.units.fields import positive as positive
-from springpoise.units.text import parse as parse
-from springpoise.units.text import quantity as quantity
+
+if TYPE_CHECKING:
+    from springpoise.units.text import parse as parse
+    from springpoise.units.text import quantity as quantity
+else:  # reading strings is loaded when there is one
+    __getattr__ = names_of(__name__, {"parse": "text", "quantity": "text"})
 
 __all__ = ["QuantityLike", "ScalarLike", "parse", "quantity"]

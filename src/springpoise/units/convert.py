@@ -3,17 +3,17 @@
 from __future__ import annotations
 
 import math
-import numbers
 import re
 import reprlib
 from collections.abc import Sequence
-from typing import Any, Protocol, TypeAlias
+from typing import TYPE_CHECKING, Any, Protocol, TypeAlias
 
 import numpy as np
-from numpy.typing import NDArray
 
 from springpoise.errors import InputError, InputTypeError, UnitError
-from springpoise.units.text import angle_hint, described, parse, spelling_hint
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
 
 
 class QuantityLike(Protocol):
@@ -33,6 +33,21 @@ DEGREES_SUSPECTED = 4.0 * math.pi
 """An angle beyond two turns [rad] is taken for degrees that were given as a plain number."""
 
 
+def _text() -> Any:
+    """The reading of strings, loaded when there is one, or an error to word."""
+    from springpoise.units import text
+
+    return text
+
+
+def _parsed(value: str, unit: str, name: str) -> float:
+    return float(_text().parse(value, unit, name))
+
+
+def _described(unit: str) -> str:
+    return str(_text().described(unit))
+
+
 def scalar_si(value: ScalarLike, unit: str, name: str) -> Any:
     """``value`` as a finite SI float, or as a read-only float array where an array came in.
 
@@ -41,7 +56,7 @@ def scalar_si(value: ScalarLike, unit: str, name: str) -> Any:
     if type(value) is float and math.isfinite(value):
         return value
     if isinstance(value, str):
-        return parse(value, unit, name)
+        return _parsed(value, unit, name)
     if _passes(value):
         return value
     number = _magnitude(value, unit, name)
@@ -52,7 +67,7 @@ def scalar_si(value: ScalarLike, unit: str, name: str) -> Any:
     except (OverflowError, ValueError):  # an integer beyond any float, a signalling NaN
         result = math.nan
     if not math.isfinite(result):
-        raise InputError(f"{name} must be {described(unit)} that is finite, got {reprlib.repr(number)}")
+        raise InputError(f"{name} must be {_described(unit)} that is finite, got {reprlib.repr(number)}")
     return result
 
 
@@ -65,6 +80,8 @@ def _is_real(value: Any) -> bool:
     """Whether a value is one real number of any kind: int, float, Fraction, Decimal, a NumPy scalar."""
     if isinstance(value, bool):
         return False
+    import numbers  # rarely needed
+
     return isinstance(value, numbers.Real) or (
         isinstance(value, numbers.Number) and not isinstance(value, numbers.Complex)
     )
@@ -81,17 +98,17 @@ def _magnitude(value: Any, unit: str, name: str) -> Any:
         return value
     spelled = str(getattr(value, "units", ""))
     if unit == "rad/s" and re.search(r"hertz|Hz", spelled):
-        raise UnitError(f"{name} must be {described(unit)}, got {value}{angle_hint(spelled, unit, 0)}")
+        raise UnitError(f"{name} must be {_described(unit)}, got {value}{_text().angle_hint(spelled, unit, 0)}")
     try:
         return m_as("dimensionless" if unit == "1" else unit)
     except Exception as error:  # each registry raises its own kind
-        hint = spelling_hint(spelled, unit) if spelled else ""
-        raise UnitError(f"{name} must be {described(unit)}, got {value}{hint}") from error
+        hint = _text().spelling_hint(spelled, unit) if spelled else ""
+        raise UnitError(f"{name} must be {_described(unit)}, got {value}{hint}") from error
 
 
 def _array_si(value: Any, unit: str, name: str) -> Any:
     """A read-only float array of finite values; a float for an array without axes."""
-    problem = f"{name} must be {described(unit)}, got {reprlib.repr(value)} of type {type(value).__name__}"
+    problem = f"{name} must be {_described(unit)}, got {reprlib.repr(value)} of type {type(value).__name__}"
     if isinstance(value, bool | None | dict | set | frozenset | bytes) or hasattr(value, "mask"):
         raise InputTypeError(problem)
     if isinstance(value, list | tuple):
@@ -103,10 +120,10 @@ def _array_si(value: Any, unit: str, name: str) -> Any:
     if array is None:
         raise InputTypeError(problem)
     if array.size == 0:
-        raise InputError(f"{name} must be {described(unit)}, got an empty array")
+        raise InputError(f"{name} must be {_described(unit)}, got an empty array")
     if not np.all(np.isfinite(array)):
         bad = array[~np.isfinite(array)][0]
-        raise InputError(f"{name} must be {described(unit)} that is finite, got {bad} in an array")
+        raise InputError(f"{name} must be {_described(unit)} that is finite, got {bad} in an array")
     if array.ndim == 0:
         return float(array)
     array = array.copy()
@@ -342,7 +359,7 @@ def poses(q: Any, name: str = "q") -> Any:
             return q
         raise _beyond_two_turns(q, name, guess=True)
     if isinstance(q, str):
-        return parse(q, "rad", name)
+        return _parsed(q, "rad", name)
     if _passes(q):
         return q
     stated = hasattr(q, "m_as")

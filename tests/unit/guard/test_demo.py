@@ -75,8 +75,8 @@ def test_the_invented_springs_obey_their_own_wire() -> None:
     stock = read_stock(STOCK)
     assert len(stock) >= 60
     others = stock.others
-    wire = np.array([float(row["wire"]) for row in others])
-    mean = np.array([float(row["outside diameter"]) for row in others]) - wire
+    wire = np.array([float(row["wire [mm]"]) for row in others])
+    mean = np.array([float(row["outside diameter [mm]"]) for row in others]) - wire
     coils = np.array([float(row["coils"]) for row in others])
     assert stock.rate == pytest.approx(1e3 * 80e3 * wire**4 / (8 * mean**3 * coils), rel=6e-3)
     index = mean / wire

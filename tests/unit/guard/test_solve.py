@@ -217,7 +217,7 @@ def test_the_report_as_json(stock_file: Callable[..., Path]) -> None:
     assert (spring["name"], spring["rate_N_per_m"], spring["free_length_m"]) == ("A-1", 245.0, 0.06)
     assert [place["what"] for place in spring["places"]] == ["anchor", "attachment"]
     assert data["ranking"][0]["taken"] is True
-    assert data["ranking"][0]["others"] == {"price": "3.10"}
+    assert data["ranking"][0]["others"] == {"price [EUR]": "3.10"}
     assert data["limits"]["holds"] is True
     assert data["actuator"][0]["current_clockwise"]["value_A"] > 0
     assert data["caution"].startswith("springs store energy")
