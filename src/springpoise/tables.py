@@ -20,7 +20,7 @@ def number(value: float, unit: str, digits: int = 4) -> str:
 
 def degrees(angle: float) -> str:
     """An angle given in rad, printed in degrees."""
-    return f"{math.degrees(angle):.2f} deg"
+    return f"{math.degrees(angle) + 0.0:.2f} deg".replace("-0.00 ", "0.00 ")
 
 
 def millimetres(length: float) -> str:
@@ -41,7 +41,10 @@ def grid(header: Sequence[str], rows: Iterable[Sequence[str]], indent: str = "  
     widths = [max(len(line[column]) for line in lines) for column in range(len(header))]
 
     def laid(line: Sequence[str]) -> str:
-        cells = [cell.ljust(width) if i == 0 else cell.rjust(width) for i, (cell, width) in enumerate(zip(line, widths, strict=True))]
+        cells = [
+            cell.ljust(width) if i == 0 else cell.rjust(width)
+            for i, (cell, width) in enumerate(zip(line, widths, strict=True))
+        ]
         return (indent + "  ".join(cells)).rstrip()
 
     return "\n".join(laid(line) for line in lines)

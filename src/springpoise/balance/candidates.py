@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Callable, Iterable, Mapping
 from typing import TypeVar
 
@@ -16,7 +15,7 @@ from springpoise.errors import NoSolution
 from springpoise.mechanism import Mechanism
 from springpoise.tables import degrees, facts, grid, millimetres, number
 
-__all__ = ["StockCandidate", "StockSearch", "candidate", "no_margin", "pareto_front"]
+__all__ = ["StockCandidate", "StockSearch", "candidate", "keeps_margin", "pareto_front"]
 
 
 @attrs.frozen
@@ -179,7 +178,7 @@ def _table(candidates: Iterable[StockCandidate]) -> str:
 def candidate(routing: Routing, stock: Stock, index: int, count: int, radius: float, height: float) -> StockCandidate:
     """One part at one mount, with all that is to be known about it."""
     spring = stock.spring(index)
-    mount = routing.mount(spring, count, radius, height)
+    mount = attrs.evolve(routing.mount(spring, count, radius, height), name=stock.parts[index])
     mechanism = routing.mechanism.with_springs([*routing.mechanism.springs, mount])
     q = routing.poses
     length = np.broadcast_to(mount.spring_length(mechanism.linkage, q), q.shape)
@@ -220,6 +219,6 @@ def pareto_front(items: Iterable[_Item], objectives: Callable[[_Item], tuple[flo
     return front
 
 
-def no_margin(one: StockCandidate) -> bool:
-    """Whether a candidate's spring leaves its lengths somewhere."""
-    return not (one.slack_margin > 0 and one.stretch_margin >= 0) or math.isnan(one.residual.worst)
+def keeps_margin(one: StockCandidate, margin: float) -> bool:
+    """Whether a candidate's spring keeps this distance from both ends of its lengths, and pulls throughout."""
+    return one.slack_margin > 0 and one.slack_margin >= margin and one.stretch_margin >= margin

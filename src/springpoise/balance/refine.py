@@ -8,19 +8,22 @@ import attrs
 import numpy as np
 from numpy.typing import NDArray
 
-from springpoise.balance.candidates import StockCandidate, no_margin
-from springpoise.balance.residual import residual
+from springpoise.balance.candidates import StockCandidate, candidate, keeps_margin
 from springpoise.balance.route import Routing
+from springpoise.balance.stock import Stock
 
 __all__ = ["refined"]
 
 Box = tuple[tuple[float, float], tuple[float, float]]
 
 
-def refined(routing: Routing, start: StockCandidate, box: Box, step: float) -> StockCandidate:
+def refined(
+    routing: Routing, stock: Stock, start: StockCandidate, box: Box, step: float, margin: float
+) -> StockCandidate:
     """The candidate at the radius and height within the box that make its worst residual least.
 
-    Rounded to multiples of ``step``. Comes back as it was where rounding leaves nothing better.
+    Rounded to multiples of ``step``, with a ``margin`` to both ends of the spring's lengths. Comes
+    back as it was where rounding leaves nothing better.
     """
     import scipy.optimize
 
@@ -34,7 +37,7 @@ def refined(routing: Routing, start: StockCandidate, box: Box, step: float) -> S
         shift = float(spring.effective_free_length) if routing.pulley is not None else 0.0  # type: ignore[attr-defined]
         length = geometry.pull[0] + shift
         low, high = spring.working_range  # type: ignore[attr-defined]
-        out = max(low - length.min(), length.max() - min(high, geometry.room), 0.0)
+        out = max(low + margin - length.min(), length.max() - min(high - margin, geometry.room), 0.0)
         if not np.all(np.isfinite(length)) or out > 0:
             return 1e6 * (1.0 + (out if math.isfinite(out) else 1.0))
         return float(np.max(np.abs(base + start.count * spring.load(length) * geometry.lever[0])))
@@ -59,9 +62,9 @@ def refined(routing: Routing, start: StockCandidate, box: Box, step: float) -> S
     )
     best = start
     for radius, height in _roundings(found.x, box, step):
-        there = _moved(routing, start, radius, height)
-        if not no_margin(there) and _has_room(routing, there) and there.residual.worst < best.residual.worst:
-            best = there
+        there = candidate(routing, stock, start.index, start.count, radius, height)
+        if keeps_margin(there, margin) and _has_room(routing, there) and there.residual.worst < best.residual.worst:
+            best = attrs.evolve(there, refined=True)
     return best
 
 
@@ -79,25 +82,3 @@ def _has_room(routing: Routing, there: StockCandidate) -> bool:
     """Whether the spring ends before its pulley at every pose."""
     spring = there.mechanism.springs[-1].spring
     return float(spring.working_range[1]) - there.stretch_margin <= routing.room(there.anchor_height)  # type: ignore[attr-defined]
-
-
-def _moved(routing: Routing, start: StockCandidate, radius: float, height: float) -> StockCandidate:
-    """The same part at another mount."""
-    old = start.mechanism.springs[-1]
-    mount = routing.mount(old.spring, old.count, radius, height)  # type: ignore[arg-type]
-    mechanism = routing.mechanism.with_springs([*routing.mechanism.springs, mount])
-    q = routing.poses
-    length = np.broadcast_to(mount.spring_length(mechanism.linkage, q), q.shape)
-    low, high = old.spring.working_range  # type: ignore[attr-defined]
-    return attrs.evolve(
-        start,
-        attach_radius=radius,
-        anchor_height=height,
-        residual=residual(mechanism, q),
-        pivot_load=float(np.max(mechanism.pivot_load(q))),
-        slack_margin=float(length.min() - low),
-        stretch_margin=float(high - length.max()),
-        stored_energy=float(np.max(mechanism.spring_energy(q))),
-        mechanism=mechanism,
-        refined=True,
-    )

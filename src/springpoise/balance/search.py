@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from pathlib import Path as FilePath
-from typing import Any, NamedTuple
+from typing import Any
 
 import attrs
 import numpy as np
@@ -16,8 +16,8 @@ from springpoise.balance.candidates import StockCandidate, StockSearch, candidat
 from springpoise.balance.progress import Progress, steps
 from springpoise.balance.refine import refined
 from springpoise.balance.residual import poses_over
-from springpoise.balance.route import Geometry, PulleyRoute, Routing
-from springpoise.balance.scoring import worst_residuals
+from springpoise.balance.route import PulleyRoute, Routing
+from springpoise.balance.scan import Scan
 from springpoise.balance.sine_match import as_mechanism
 from springpoise.balance.stock import Stock, read_stock
 from springpoise.errors import InputError, InputTypeError
@@ -28,14 +28,6 @@ from springpoise.units import ScalarLike
 __all__ = ["PulleyRoute", "StockCandidate", "StockSearch", "search_stock"]
 
 Array = NDArray[np.float64]
-
-SLACK, OVERSTRETCHED, NO_ROOM, UNREACHABLE = (
-    "goes slack",
-    "stretched beyond its longest length",
-    "longer than the room in front of the pulley",
-    "attachment inside the pulley",
-)
-OVER_LIMIT = "worst residual above the limit"
 
 
 def search_stock(
@@ -49,6 +41,7 @@ def search_stock(
     pulley: PulleyRoute | None = None,
     anchor_angle: ScalarLike = math.pi / 2,
     residual_limit: ScalarLike | None = None,
+    least_margin: ScalarLike = 0.0,
     keep: int = 10,
     refine: int = 3,
     resolution: ScalarLike = 1e-4,
@@ -84,7 +77,9 @@ def search_stock(
         Direction from pivot to anchor on the ground [rad]; by default straight up. The attachment
         lies where a spring of zero free length would balance the arm's weight at every angle.
     residual_limit
-        Greatest worst residual that counts as a fit [N·m]; None for no limit.
+        Greatest worst residual that counts as a fit [N·m], after refining; None for no limit.
+    least_margin
+        Distance that every spring keeps from both ends of its lengths [m], >= 0.
     keep
         How many candidates the result lists, each another part or count.
     refine
@@ -119,159 +114,40 @@ def search_stock(
     numbers = _counts(counts)
     limit = math.inf if residual_limit is None else _positive(residual_limit, "N*m", "residual_limit")
     step = _positive(resolution, "m", "resolution")
+    margin = units.metre(least_margin, "least_margin")
+    if not isinstance(margin, float) or not margin >= 0:
+        raise InputError(f"least_margin must be >= 0 m, got {margin}")
     for name, value in (("keep", keep), ("refine", refine)):
         if isinstance(value, bool) or not isinstance(value, int) or value < (name == "keep"):
             raise InputError(f"{name} must be a whole number >= {int(name == 'keep')}, got {value!r}")
     if pulley is not None and not isinstance(pulley, PulleyRoute):
         raise InputTypeError(f"pulley must be a PulleyRoute or None, got {pulley!r}")
     routing = _routing(mechanism, poses_over(mechanism, over), units.radian(anchor_angle, "anchor_angle"), pulley)
-    scan = _Scan(routing, listed, numbers, limit)
+    scan = Scan(routing, listed, numbers, limit, margin)
     with steps(progress, len(heights) * radii.size * len(listed) * len(numbers), "springs tried") as report:
         for height in heights.tolist():
             scan.look_at(radii, height)
             report(scan.considered)
 
-    rank = [candidate(routing, listed, *place) for place in scan.best_by_part(keep)]
+    rank = [candidate(routing, listed, *place) for place in scan.best_by_part(max(keep, refine))]
     box = ((float(radii.min()), float(radii.max())), (float(heights.min()), float(heights.max())))
-    better = [refined(routing, one, box, step) for one in rank[:refine]]
-    ranked = tuple(sorted([*better, *rank[len(better) :]], key=_merit))
+    better = [refined(routing, listed, one, box, step, margin) for one in rank[:refine]]
+    # Refining comes first: what it brings below the limit fits.
+    rank = sorted([*better, *rank[len(better) :]], key=_merit)
+    ranked = tuple([one for one in rank if one.residual.worst <= limit][:keep])
     front = [candidate(routing, listed, *place) for place in scan.front_of_mounts()]
     return StockSearch(
         candidates=ranked,
-        pareto=tuple(pareto_front([*ranked, *front], _objectives)),
+        pareto=tuple(pareto_front([*ranked, *front], _merit)),
         considered=scan.considered,
         rejected={reason: number for reason, number in scan.counted.items() if number},
-        nearest_miss=None if ranked else scan.nearest_miss(),
+        nearest_miss=None if ranked else scan.nearest_miss(rank[0] if rank else None),
         residual_limit=None if residual_limit is None else limit,
     )
 
 
 def _merit(one: StockCandidate) -> tuple[float, int, float]:
     return one.residual.worst, one.count, one.pivot_load
-
-
-_objectives = _merit
-
-
-class _BestPart(NamedTuple):
-    """The best part of one mount and count."""
-
-    worst: float
-    springs: int
-    pivot_load: float
-    candidate: int
-    radius: float
-    height: float
-
-
-class _Scan:
-    """What a pass over the grid remembers: the best mount of each part and count, and the best part of each mount."""
-
-    def __init__(self, routing: Routing, stock: Stock, counts: tuple[int, ...], limit: float) -> None:
-        self.routing, self.stock, self.counts, self.limit = routing, stock, counts, limit
-        self.considered = 0
-        mechanism, q = routing.mechanism, routing.poses
-        self.base = np.broadcast_to(mechanism.holding_torque(q), q.shape)
-        self.bearing = [np.broadcast_to(part, q.shape) for part in mechanism.pivot_force(q)]
-        # One column for each candidate of a mount: all parts for the first count, then for the next.
-        self.part = np.tile(np.arange(len(stock)), len(counts))
-        self.count = np.repeat(np.asarray(counts), len(stock))
-        self.rate = self.count * stock.rate[self.part]
-        self.free = stock.free_length[self.part]
-        self.longest = stock.longest[self.part]
-        self.effective = self.free - stock.initial_tension[self.part] / stock.rate[self.part]
-        straight = routing.pulley is None
-        self.offset = -self.rate * self.effective if straight else np.zeros_like(self.rate)
-        self.zero = np.zeros_like(self.rate) if straight else self.effective
-        size = self.part.size
-        self.worst = np.full(size, math.inf)
-        self.where = np.zeros((size, 2))
-        self.mounts: list[_BestPart] = []
-        self.miss = (math.inf, 0, 0.0, 0.0, "")  # how far out, candidate, radius, height, reason
-        self.counted = dict.fromkeys((SLACK, OVERSTRETCHED, NO_ROOM, UNREACHABLE, OVER_LIMIT), 0)
-
-    def look_at(self, radii: Array, height: float) -> None:
-        """All candidates of all attachment radii at one anchor height."""
-        geometry = self.routing.geometry(radii, height)
-        for row, radius in enumerate(radii.tolist()):
-            self.considered += self.part.size
-            if not (np.all(np.isfinite(geometry.pull[row])) and np.all(np.isfinite(geometry.lever[row]))):
-                self.counted[UNREACHABLE] += self.part.size
-                continue
-            fits = self._fitting(geometry, row, radius, height)
-            if fits.size:
-                self._score(geometry, row, fits, radius, height)
-
-    def _fitting(self, geometry: Geometry, row: int, radius: float, height: float) -> NDArray[np.intp]:
-        """Candidates whose spring stays within its lengths; the others are counted by their first reason."""
-        shortest, longest = self.zero + geometry.least[row], self.zero + geometry.greatest[row]
-        shortfalls = (
-            (SLACK, self.free - shortest),
-            (OVERSTRETCHED, longest - self.longest),
-            (NO_ROOM, longest - geometry.room),
-        )
-        unfit = np.zeros(self.part.size, dtype=bool)
-        for reason, shortfall in shortfalls:
-            out = (shortfall > 0 if reason is not SLACK else shortfall >= 0) & ~unfit
-            if out.any():
-                self.counted[reason] += int(out.sum())
-                unfit |= out
-        if math.isinf(np.min(self.worst)) and unfit.all():
-            total = np.max([s for _, s in shortfalls], axis=0)
-            nearest = int(np.argmin(total))
-            if total[nearest] < self.miss[0]:
-                reason = max(shortfalls, key=lambda pair: pair[1][nearest])[0]
-                self.miss = (float(total[nearest]), nearest, radius, height, reason)
-        return np.flatnonzero(~unfit)
-
-    def _score(self, geometry: Geometry, row: int, fits: NDArray[np.intp], radius: float, height: float) -> None:
-        pull, lever = geometry.pull[row], geometry.lever[row]
-        # Holding torque is minus what the spring exerts, so the spring's share is + load · lever.
-        worst = worst_residuals(self.base, pull, lever, self.rate[fits], self.offset[fits])
-        self.counted[OVER_LIMIT] += int(np.sum(worst > self.limit))
-        better = worst < self.worst[fits]
-        chosen = fits[better]
-        self.worst[chosen] = worst[better]
-        self.where[chosen] = radius, height
-        for count in self.counts:
-            of_count = np.flatnonzero(self.count[fits] == count)
-            if not of_count.size:
-                continue
-            at = of_count[int(np.argmin(worst[of_count]))]
-            if worst[at] <= self.limit:
-                one = int(fits[at])
-                load = self.rate[one] * pull + self.offset[one]
-                right = self.bearing[0] - load * geometry.force_x[row]
-                up = self.bearing[1] - load * geometry.force_y[row]
-                pivot_load = float(np.sqrt(np.max(right * right + up * up)))
-                self.mounts.append(_BestPart(float(worst[at]), count, pivot_load, one, radius, height))
-
-    def best_by_part(self, most: int) -> list[tuple[int, int, float, float]]:
-        """Part, count, radius and height of the best mount of each part and count, the best few of them."""
-        order = np.argsort(self.worst, kind="stable")[:most]
-        found = [i for i in order if self.worst[i] <= self.limit and math.isfinite(self.worst[i])]
-        return [self._place(int(i), *map(float, self.where[i])) for i in found]
-
-    def front_of_mounts(self) -> list[tuple[int, int, float, float]]:
-        """The same of the best parts of each mount and count that no other beats in all respects."""
-        front = pareto_front(self.mounts, lambda one: (one.worst, one.springs, one.pivot_load))
-        return [self._place(one.candidate, one.radius, one.height) for one in front]
-
-    def nearest_miss(self) -> StockCandidate | None:
-        """The candidate that comes nearest to fitting, with what it lacks; None where no mount can be reached."""
-        if np.isfinite(self.worst).any():
-            i = int(np.argmin(self.worst))
-            radius, height = map(float, self.where[i])
-            lacks = f"its worst residual is {self.worst[i] - self.limit:.4g} N*m above the limit"
-        elif self.miss[4]:
-            out, i, radius, height, reason = self.miss
-            lacks = f"{reason}, by {1e3 * out:.3g} mm"
-        else:
-            return None
-        return attrs.evolve(candidate(self.routing, self.stock, *self._place(i, radius, height)), lacks=lacks)
-
-    def _place(self, column: int, radius: float, height: float) -> tuple[int, int, float, float]:
-        return int(self.part[column]), int(self.count[column]), radius, height
 
 
 def _routing(mechanism: Mechanism, poses: Array, anchor_angle: float, pulley: PulleyRoute | None) -> Routing:

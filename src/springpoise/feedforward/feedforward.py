@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from typing import TYPE_CHECKING, Any, Literal, TypeAlias, overload
 
 import attrs
@@ -12,6 +12,7 @@ from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError, InputTypeError
 from springpoise.feedforward.actuator import Actuator, signal
 from springpoise.mechanism import Mechanism
+from springpoise.mechanism.sums import joined
 
 if TYPE_CHECKING:  # recording is loaded when it is asked for
     from springpoise.tape import Program
@@ -28,10 +29,14 @@ def _mechanism(value: Any) -> Mechanism:
     return value
 
 
-def _actuator(value: Any) -> Actuator:
-    if not isinstance(value, Actuator):
-        raise InputTypeError(f"Feedforward.actuator must be an Actuator, got {value!r}")
-    return value
+def _actuator(value: Any) -> Actuator | tuple[Actuator, ...]:
+    if isinstance(value, Actuator):
+        return value
+    if isinstance(value, Sequence) and value and all(isinstance(item, Actuator) for item in value):
+        return tuple(value)
+    raise InputTypeError(
+        f"Feedforward.actuator must be an Actuator, or a sequence with one for each joint, got {value!r}"
+    )
 
 
 @attrs.frozen
@@ -64,8 +69,32 @@ class Feedforward:
 
     mechanism: Mechanism = attrs.field(converter=_mechanism)
     """The mechanism as it is built."""
-    actuator: Actuator = attrs.field(factory=Actuator, converter=_actuator, kw_only=True)
-    """Motor and gear; by default none, with ratio 1, which is enough for torques."""
+    actuator: Actuator | tuple[Actuator, ...] = attrs.field(default=Actuator(), converter=_actuator, kw_only=True)
+    """Motor and gear of the joint, or of every joint alike; or a sequence with one for each joint.
+
+    By default none, with ratio 1, which is enough for torques.
+    """
+
+    def __attrs_post_init__(self) -> None:
+        count = self.mechanism.linkage.joint_count
+        if isinstance(self.actuator, tuple) and len(self.actuator) != count:
+            raise InputError(f"Feedforward.actuator must be one for each of {count} joints, got {len(self.actuator)}")
+
+    @property
+    def joint_actuators(self) -> tuple[Actuator, ...]:
+        """The actuator of each joint."""
+        return (
+            self.actuator if isinstance(self.actuator, tuple) else (self.actuator,) * self.mechanism.linkage.joint_count
+        )
+
+    def _each(self, value: Any) -> list[Any]:
+        """A joint result joint by joint; what has no axis of joints serves them all."""
+        count = self.mechanism.linkage.joint_count
+        if count == 1:
+            return [value]
+        if isinstance(value, tuple):
+            return list(value)
+        return [value[..., joint] for joint in range(count)] if np.ndim(value) else [value] * count
 
     @overload
     def torque(self, q: float | str, *, moving: Any = 0, gravity: Any = None) -> float: ...
@@ -93,7 +122,9 @@ class Feedforward:
         torque = self.mechanism.holding_torque(q, gravity)
         if isinstance(way, float) and way == 0.0:
             return torque
-        return torque + way * self.mechanism.friction_band(q, gravity)
+        band = self.mechanism.friction_band(q, gravity)
+        each = zip(self._each(torque), self._each(way), self._each(band), strict=True)
+        return joined([hold + way * rub for hold, way, rub in each])
 
     @overload
     def current(self, q: float | str, *, moving: Any = 0, gravity: Any = None) -> float: ...
@@ -108,7 +139,9 @@ class Feedforward:
             As ``torque``, or the actuator has no motor.
         """
         way = _direction(moving)
-        return self.actuator.current(self.torque(q, moving=way, gravity=gravity), moving=way)
+        torque = self.torque(q, moving=way, gravity=gravity)
+        each = zip(self.joint_actuators, self._each(torque), self._each(way), strict=True)
+        return joined([actuator.current(torque, moving=way) for actuator, torque, way in each])
 
     @overload
     def voltage(self, q: float | str, *, velocity: float | str, moving: Any = None, gravity: Any = None) -> float: ...
@@ -133,13 +166,20 @@ class Feedforward:
         InputError
             As ``current``.
         """
-        rate = signal(velocity, "rad/s", "velocity")
-        way = namespace(rate).sign(rate) if moving is None else _direction(moving)
-        torque = self.mechanism.holding_torque(q, gravity)
+        rates = self._each(velocity if isinstance(velocity, tuple) else signal(velocity, "rad/s", "velocity"))
+        ways = [None] * len(rates) if moving is None else self._each(_direction(moving))
+        torques = self._each(self.mechanism.holding_torque(q, gravity))
+        bands = self._each(self.mechanism.friction_band(q, gravity))
+        volts = []
         with np.errstate(invalid="ignore"):
-            torque = torque + way * self.mechanism.friction_band(q, gravity)
-            not_finite = 0.0 * rate  # NaN for an infinite velocity, which would else give infinite volts
-            return self.actuator.voltage(torque, velocity=rate, moving=way) + not_finite
+            for actuator, rate, way, torque, band in zip(
+                self.joint_actuators, rates, ways, torques, bands, strict=True
+            ):
+                direction = namespace(rate).sign(rate) if way is None else way
+                not_finite = 0.0 * rate  # NaN for an infinite velocity, which would else give infinite volts
+                needed = torque + direction * band
+                volts.append(actuator.voltage(needed, velocity=rate, moving=direction) + not_finite)
+        return joined(volts)
 
     def program(self, output: Output = "torque", *, moving: int = 0, gravity_per_call: bool = False) -> Program:
         """The computation as a recorded straight-line program; arguments as ``compile``."""
@@ -150,22 +190,20 @@ class Feedforward:
         way = _direction(moving)
         if not isinstance(way, float):
             raise InputTypeError(f"moving must be one of -1, 0, +1 for a compiled function, got {moving!r}")
-        inputs = (
-            ["q"]
-            if self.mechanism.linkage.joint_count == 1
-            else [f"q{joint}" for joint in range(self.mechanism.linkage.joint_count)]
-        )
-        joints = len(inputs)
+        joints, components = self.mechanism.linkage.joint_count, ("gx", "gy", "gz")[: len(self.mechanism.gravity)]
+        suffixes = [""] if joints == 1 else [str(joint) for joint in range(joints)]
+        inputs = [f"q{suffix}" for suffix in suffixes]
         if output == "voltage":
-            inputs.append("velocity")
+            inputs += [f"velocity{suffix}" for suffix in suffixes]
         if gravity_per_call:
-            inputs += ["gx", "gy"]
+            inputs += components
 
         def formula(*values: Carrier) -> Any:
             q = values[0] if joints == 1 else tuple(values[:joints])
-            gravity = tuple(values[-2:]) if gravity_per_call else None
+            gravity = tuple(values[-len(components) :]) if gravity_per_call else None
             if output == "voltage":
-                return self.voltage(q, velocity=values[joints], moving=way or None, gravity=gravity)
+                velocity = values[joints] if joints == 1 else tuple(values[joints : 2 * joints])
+                return self.voltage(q, velocity=velocity, moving=way or None, gravity=gravity)
             if output == "current":
                 return self.current(q, moving=way, gravity=gravity)
             return self.torque(q, moving=way, gravity=gravity)
@@ -189,7 +227,8 @@ class Feedforward:
         ----------
         output
             ``"torque"`` [N·m] and ``"current"`` [A]: a function of ``q``. ``"voltage"`` [V]: a
-            function of ``q`` and ``velocity``.
+            function of ``q`` and ``velocity``. With n joints a function of ``q0`` to ``qn-1`` (and
+            ``velocity0`` to ``velocityn-1``) that returns a tuple.
         moving
             Direction of the commanded motion that is built in: +1, -1, or 0 for at rest; for
             ``"voltage"`` 0 stands for the direction of the velocity.
@@ -197,7 +236,8 @@ class Feedforward:
             False for floats in, float out. True for NumPy arrays of any shape, computed in
             blocks that stay in the cache.
         gravity_per_call
-            True for two more arguments, ``gx`` and ``gy`` [m/s²], for a tilted or accelerating base.
+            True for more arguments, ``gx`` and ``gy`` (and ``gz`` in space) [m/s²], for a tilted or
+            accelerating base.
 
         Returns
         -------

@@ -142,12 +142,36 @@ def test_the_nearest_miss_where_no_spring_stays_within_its_lengths(stock, grid, 
 
 def test_the_nearest_miss_where_a_limit_is_too_tight():
     found = balance.search_stock(ARM, STOCK, **GRID, residual_limit="1 mN*m")
-    best = balance.search_stock(ARM, STOCK, **GRID, refine=0).best
+    best = balance.search_stock(ARM, STOCK, **GRID).best
     assert found.residual_limit == 0.001
     assert found.nearest_miss.residual == best.residual
     assert found.nearest_miss.lacks == f"its worst residual is {best.residual.worst - 0.001:.4g} N*m above the limit"
     assert sum(found.rejected.values()) == found.considered
     assert "worst residual above the limit" in found.rejected
+
+
+def test_what_refining_brings_below_the_limit_fits():
+    coarse, fine = (balance.search_stock(ARM, STOCK, **GRID, refine=n).best.residual.worst for n in (0, 3))
+    assert fine < coarse
+    found = balance.search_stock(ARM, STOCK, **GRID, residual_limit=0.5 * (fine + coarse))
+    assert found.best.residual.worst == fine
+    assert all(one.residual.worst <= found.residual_limit for one in found.candidates)
+
+
+def test_a_margin_is_kept_by_all():
+    margin = 0.012
+    found = balance.search_stock(ARM, STOCK, **GRID, least_margin="12 mm")
+    assert found.success
+    for one in (*found.candidates, *found.pareto):
+        assert one.slack_margin >= margin - 1e-12
+        assert one.stretch_margin >= margin - 1e-12
+    with pytest.raises(InputError, match=r"^least_margin must be >= 0 m, got -0\.001$"):
+        balance.search_stock(ARM, STOCK, **GRID, least_margin="-1 mm")
+
+
+def test_the_mount_bears_the_part_s_name():
+    found = balance.search_stock(ARM, STOCK, **GRID)
+    assert found.mechanism.springs[-1].name == found.best.part
 
 
 def test_nothing_can_be_reached():

@@ -213,7 +213,10 @@ def test_wrong_programs():
 def test_wrong_parts():
     with pytest.raises(InputTypeError, match=r"Feedforward.mechanism must be a Mechanism, got Arm\("):
         Feedforward(ARM)
-    with pytest.raises(InputTypeError, match=r"Feedforward.actuator must be an Actuator, got Motor\("):
+    with pytest.raises(
+        InputTypeError,
+        match=r"Feedforward.actuator must be an Actuator, or a sequence with one for each joint, got Motor\(",
+    ):
         Feedforward(MECHANISMS["bare"], actuator=ACTUATOR.motor)
     with pytest.raises(InputError, match=r"q must be within two turns.*degrees\?"):
         Feedforward(MECHANISMS["bare"]).torque(45.0)
