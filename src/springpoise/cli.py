@@ -94,7 +94,7 @@ def _design(arguments: argparse.Namespace) -> _Answer:
     lines = [str(found)]
     if found.solved is not None:
         opening = f"{WRITTEN_BY_DESIGN}{source.name}. Solving again writes over this file."
-        write_whole(text_of(found.solved, opening), target)
+        write_whole(text_of(found.solved, opening, target.parent), target)
         lines.append(f"Written: {target}. Judge it with: springpoise check {target}")
     else:
         lines.append("Nothing was written.")

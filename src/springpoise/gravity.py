@@ -1,6 +1,7 @@
 """How strong gravity is, and how a tilted or accelerating base feels it.
 
-In the plane of an arm x points right and y up; gravity is the vector ``(gx, gy)`` in m/s².
+In the plane of an arm x points right and y up; gravity is the vector ``(gx, gy)`` in m/s². In
+space z points up, and gravity is ``(gx, gy, gz)``.
 """
 
 from __future__ import annotations
@@ -15,7 +16,7 @@ from springpoise.carriers import namespace
 from springpoise.errors import InputError
 from springpoise.units import ScalarLike
 
-__all__ = ["STANDARD_GRAVITY", "local", "seen_from_base"]
+__all__ = ["STANDARD_GRAVITY", "local", "seen_from_base", "seen_from_base_in_space"]
 
 STANDARD_GRAVITY = 9.80665
 """Standard acceleration of free fall [m/s²], exact by definition (3rd CGPM, 1901)."""
@@ -117,10 +118,63 @@ def seen_from_base(
     """
     angle = units.radian(tilt, "tilt")
     ax, ay = units.acceleration_pair(acceleration, "acceleration")
-    g = units.scalar_si(magnitude, "m/s**2", "magnitude")
-    if isinstance(g, float | np.ndarray) and np.any(g < 0):
-        raise InputError(f"magnitude must be >= 0 m/s**2, got {float(np.min(g)):g}")
+    g = _strength(magnitude)
     xp = namespace(angle, ax, ay, g)
     right, up = -ax, -ay - g
     c, s = xp.cos(angle), xp.sin(angle)
     return c * right + s * up, c * up - s * right
+
+
+def seen_from_base_in_space(
+    roll_pitch_yaw: Any = (0.0, 0.0, 0.0),
+    *,
+    acceleration: Any = (0.0, 0.0, 0.0),
+    magnitude: ScalarLike = STANDARD_GRAVITY,
+) -> tuple[Any, Any, Any]:
+    """Gravity as the coordinates of a base in space see it that is tilted and accelerates.
+
+    Parameters
+    ----------
+    roll_pitch_yaw
+        How the base is turned out of the level: about the level x, then y, then z axis [rad], each
+        counter-clockwise seen against its axis; floats or arrays that broadcast.
+    acceleration
+        Acceleration (ax, ay, az) of the base in level coordinates, z up [m/s²].
+    magnitude
+        Strength of gravity [m/s²], not negative.
+
+    Returns
+    -------
+    (gx, gy, gz)
+        What a ``gravity=`` argument takes in space [m/s²]; a component that no array enters is a float.
+
+    Raises
+    ------
+    InputError
+        Negative magnitude, or an angle of more than two turns (degrees given as a plain number).
+
+    Examples
+    --------
+    >>> [round(g, 5) + 0.0 for g in seen_from_base_in_space((0, "30 deg", 0))]
+    [4.90332, 0.0, -8.49281]
+    """
+    roll, pitch, yaw = units.radian_triple(roll_pitch_yaw, "roll_pitch_yaw")
+    ax, ay, az = units.triple(acceleration, "m/s**2", "acceleration")
+    g = _strength(magnitude)
+    xp = namespace(roll, pitch, yaw, ax, ay, az, g)
+    x, y, z = -ax, -ay, -az - g
+    # The level vector, turned back: about z, then y, then x.
+    c, s = xp.cos(yaw), xp.sin(yaw)
+    x, y = c * x + s * y, c * y - s * x
+    c, s = xp.cos(pitch), xp.sin(pitch)
+    x, z = c * x - s * z, c * z + s * x
+    c, s = xp.cos(roll), xp.sin(roll)
+    y, z = c * y + s * z, c * z - s * y
+    return x, y, z
+
+
+def _strength(magnitude: ScalarLike) -> Any:
+    g = units.scalar_si(magnitude, "m/s**2", "magnitude")
+    if isinstance(g, float | np.ndarray) and np.any(g < 0):
+        raise InputError(f"magnitude must be >= 0 m/s**2, got {float(np.min(g)):g}")
+    return g

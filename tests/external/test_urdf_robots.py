@@ -11,6 +11,7 @@ from __future__ import annotations
 
 import importlib.metadata
 import math
+from xml.etree import ElementTree
 
 import numpy as np
 import pinocchio
@@ -22,7 +23,7 @@ from springpoise.linkages.urdf import from_urdf
 pytest.importorskip("defusedxml", reason="reading URDF needs the package defusedxml")
 try:
     FILES = {
-        str(file).rpartition("/robots/")[2].removeprefix("robots/"): file.locate()
+        str(file).partition("/robots/")[2]: file.locate()
         for file in importlib.metadata.files("example-robot-data") or ()
         if str(file).endswith(".urdf")
     }
@@ -53,28 +54,47 @@ ROBOTS = [
 
 
 def _file(name):
-    for found, path in FILES.items():
-        if found.endswith(name):
-            return str(path)
-    raise AssertionError(f"example-robot-data has no {name}")
+    return str(FILES[name])
 
 
 def _referee(path, model):
     """Pinocchio's holding torques at a pose of ours, in our order of joints."""
-    theirs = pinocchio.buildModelFromUrdf(path, mimic=True)
+    mimics = {}
+    try:
+        theirs = pinocchio.buildModelFromUrdf(path, mimic=True)
+    except ValueError:
+        # Pinocchio follows only joints that come before in its own order. Here it takes all joints
+        # as free, and what they follow is read by another parser and put in by virtual work.
+        theirs = pinocchio.buildModelFromUrdf(path)
+        for joint in ElementTree.parse(path).getroot().findall("joint"):
+            for mimic in joint.findall("mimic"):
+                mimics[joint.get("name")] = (
+                    mimic.get("joint"),
+                    float(mimic.get("multiplier", "1")),
+                    float(mimic.get("offset", "0")),
+                )
     theirs.gravity.linear = np.array([0.0, 0.0, -9.80665])
     data = theirs.createData()
-    joints = [theirs.joints[theirs.getJointId(name)] for name in model.joint_names]
-    assert theirs.nv == len(joints)
+    assert theirs.nv == len(model.joint_names) + len(mimics)
+
+    def joint_of(name):
+        return theirs.joints[theirs.getJointId(name)]
 
     def held(pose):
+        travels = dict(zip(model.joint_names, map(float, pose), strict=True))
+        travels |= {name: offset + ratio * travels[of] for name, (of, ratio, offset) in mimics.items()}
         q = np.zeros(theirs.nq)
-        for joint, angle in zip(joints, pose, strict=True):
+        for name, travel in travels.items():
+            joint = joint_of(name)
             if joint.nq == 2:  # a joint without limits: cosine and sine
-                q[joint.idx_q : joint.idx_q + 2] = math.cos(angle), math.sin(angle)
+                q[joint.idx_q : joint.idx_q + 2] = math.cos(travel), math.sin(travel)
             else:
-                q[joint.idx_q] = angle
-        return pinocchio.computeGeneralizedGravity(theirs, data, q)[[joint.idx_v for joint in joints]]
+                q[joint.idx_q] = travel
+        torque = pinocchio.computeGeneralizedGravity(theirs, data, q)
+        by_name = {name: torque[joint_of(name).idx_v] for name in travels}
+        for name, (of, ratio, _) in mimics.items():
+            by_name[of] += ratio * by_name[name]
+        return np.array([by_name[name] for name in model.joint_names])
 
     return held
 

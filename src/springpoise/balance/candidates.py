@@ -8,7 +8,7 @@ from typing import TypeVar
 import attrs
 import numpy as np
 
-from springpoise.balance.residual import Residual, residual
+from springpoise.balance.residuals import Residual, residual
 from springpoise.balance.route import Routing
 from springpoise.balance.stock import Stock
 from springpoise.errors import NoSolution

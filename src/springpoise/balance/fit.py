@@ -9,7 +9,7 @@ import attrs
 import numpy as np
 
 from springpoise.balance.amounts import best_amounts
-from springpoise.balance.residual import Residual, poses_over, residual
+from springpoise.balance.residuals import Residual, poses_over, residual
 from springpoise.errors import InputError, InputTypeError, NoSolution
 from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.springs import ScaledSpring

@@ -15,10 +15,10 @@ from springpoise import units
 from springpoise.balance.candidates import StockCandidate, StockSearch, candidate, pareto_front
 from springpoise.balance.progress import Progress, steps
 from springpoise.balance.refine import refined
-from springpoise.balance.residual import poses_over
+from springpoise.balance.residuals import poses_over
 from springpoise.balance.route import PulleyRoute, Routing
 from springpoise.balance.scan import Scan
-from springpoise.balance.sine_match import as_mechanism
+from springpoise.balance.sine import as_mechanism
 from springpoise.balance.stock import Stock, read_stock
 from springpoise.errors import InputError, InputTypeError
 from springpoise.linkages import Arm

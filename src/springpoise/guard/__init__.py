@@ -11,16 +11,25 @@ title, description
 [arm]             Arm: length; [[arm.bodies]] Body: name, mass, com
 [travel]          from, to. A full turn without.
 [friction]        Friction: coulomb, pivot_friction, pivot_radius
-[[springs]]       SpringMount: name, count, rigid_length
-[springs.spring]  kind = "extension", "zero length", "compression", "torsion" or "constant force",
-                  and the fields of that class
+[[springs]]       SpringMount: name, count, rigid_length, moving_mass
+[springs.spring]  kind = "extension", "zero length", "compression", "torsion", "constant force",
+                  "gas spring", "rubber tube", "strip spring", "torque curve", "in parallel",
+                  "in series", "offset" or "scaled", and the fields of that class; of springs in
+                  springs each is a table that names its kind, and so is a tube's law.
+                  "gas spring from forces": the arguments of GasSpring.from_forces.
+                  "measured": lengths, loads, unloading; "measured torsion": angles, torques,
+                  unloading; or for either file, a CSV file beside this one.
+                  "extension coil", "compression coil", "torsion coil", "strip", "spiral": the fields
+                  of the part, its wire by name, and how it is used (see spring_of).
 [springs.path]    kind = "straight": first, last. "cable": along = [point, disc or point ..., point].
                   "joint travel": joint, ratio. A point is { body = "ground", at = ["0 m", "0.2 m"] },
                   a disc { centre = {a point}, radius = "15 mm", turn = "cw" } with its friction.
+[[service]]       Service: what springs need to be judged warm or cold; spring names one of them
 [[payloads]]      Payload: name, mass, at; none of them is on the arm until a limit names it
 [actuator]        Actuator: ratio, efficiency, sign, zero; [actuator.motor] Motor
 [[limits]]        what = "residual torque", "holding torque", "stretch", "stored energy",
-                  "balance angles", "motor current" or "pivot load", and the fields of that class
+                  "balance angles", "motor current", "pivot load", "yield margin", "fatigue margin",
+                  "buckling margin" or "service temperature", and the fields of that class
 [design]          method = "stock", "sine" or "fit", and the fields of that class. With "fit", what is
                   to be found is written "open" in the springs: rate or pull, and either
                   initial_tension and free_angle, or rigid_length.
@@ -43,18 +52,23 @@ from springpoise.guard.limits import (
     Stretch,
 )
 from springpoise.guard.openings import OpenSpring
+from springpoise.guard.part_limits import BucklingMargin, FatigueMargin, ServiceTemperature, YieldMargin
+from springpoise.guard.part_springs import spring_of
 from springpoise.guard.requests import DesignRequest, FitRequest, SineRequest, Steps, StockRequest
+from springpoise.guard.service import Service
 from springpoise.guard.solve import Design, design
 from springpoise.guard.verdict import Case, LimitVerdict
 
 __all__ = [
     "BalanceAngles",
+    "BucklingMargin",
     "Case",
     "Change",
     "CheckReport",
     "Comparison",
     "Design",
     "DesignRequest",
+    "FatigueMargin",
     "FitRequest",
     "HoldingTorque",
     "Limit",
@@ -66,15 +80,19 @@ __all__ = [
     "PivotLoad",
     "PoiseFile",
     "ResidualTorque",
+    "Service",
+    "ServiceTemperature",
     "SineRequest",
     "Steps",
     "StockRequest",
     "StoredEnergy",
     "Stretch",
+    "YieldMargin",
     "check",
     "compare",
     "design",
     "dump",
     "load",
     "save",
+    "spring_of",
 ]

@@ -14,6 +14,7 @@ from springpoise.tables import number
 __all__ = [
     "JSON_SUFFIX",
     "OfPeak",
+    "celsius",
     "finite_or_none",
     "percent",
     "shown",
@@ -22,11 +23,20 @@ __all__ = [
     "written",
 ]
 
-_SPELLED = {"1/K": "K^-1", "m/s**2": "m/s^2", "kg/m**3": "kg/m^3"}
+_SPELLED = {
+    "1/K": "K^-1",
+    "m/s**2": "m/s^2",
+    "kg/m**3": "kg/m^3",
+    "Pa*m**6/mol**2": "Pa*m^6/mol^2",
+    "m**3/mol": "m^3/mol",
+}
 """Units as a file spells them, where that is not as the library does."""
 
 _FRIENDLIER = {"m": ("mm", 1e3), "rad": ("deg", 180.0 / math.pi), "N/m": ("N/mm", 1e-3)}
 """What people read more easily; used where the number stays exact and short."""
+
+ICE_POINT = 273.15
+"""0 degrees Celsius [K]."""
 
 JSON_SUFFIX = {
     "1": "",
@@ -41,6 +51,8 @@ JSON_SUFFIX = {
     "J": "_J",
     "A": "_A",
     "ohm": "_ohm",
+    "K": "_K",
+    "Pa": "_Pa",
 }
 """What a name in JSON ends with, by unit."""
 
@@ -48,6 +60,10 @@ JSON_SUFFIX = {
 def written(value: float, unit: str) -> str:
     """A value as a text with a unit that reads back as exactly the same float."""
     value = float(value)
+    if unit == "K":
+        text = f"{value - ICE_POINT:.10g} degC"
+        if units.parse(text, unit) == value:
+            return text
     if unit in _FRIENDLIER and abs(value) < 1e9:
         friendlier, factor = _FRIENDLIER[unit]
         text = f"{value * factor:.10g} {friendlier}"
@@ -67,6 +83,11 @@ def shown(value: float, unit: str, digits: int = 4) -> str:
     if unit == "m":
         return f"{1e3 * value:.2f} mm" if abs(value) < 1e4 else number(1e3 * value, "mm", digits)
     return number(value, unit, digits)
+
+
+def celsius(temperature: float) -> str:
+    """A temperature given in K as tables and sentences show it: ``"-10 degC"``."""
+    return f"{round(temperature - ICE_POINT, 6):g} degC"
 
 
 def percent(share: float) -> str:

@@ -2,17 +2,23 @@
 
 from __future__ import annotations
 
+import math
 import os
+import warnings
 from typing import Any
 
 import attrs
 import numpy as np
 
-from springpoise.errors import InputError, InputTypeError, PoiseFileError
-from springpoise.guard.amounts import shown
+from springpoise.errors import InputError, InputTypeError, PoiseFileError, SpringpoiseError
+from springpoise.guard.amounts import celsius, shown
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.files import load
+from springpoise.guard.limits import Limit
+from springpoise.guard.service import at_temperature
 from springpoise.guard.verdict import Case, LimitVerdict
+from springpoise.mechanism.gas_mounting import check_gas_mounts
+from springpoise.springs import SpringWarning
 from springpoise.tables import grid
 
 __all__ = ["CheckReport", "check", "document_at", "judge"]
@@ -29,6 +35,8 @@ class CheckReport:
     """The file's name, or the document's title."""
     verdicts: tuple[LimitVerdict, ...]
     """One for each limit, in the file's order."""
+    warnings: tuple[str, ...] = ()
+    """What is unwise about the springs, whatever the limits say: mounting, buckling, temperature."""
 
     @property
     def holds(self) -> bool:
@@ -57,6 +65,7 @@ class CheckReport:
             "holds": self.holds,
             "status": self.status,
             "verdicts": [verdict.to_dict() for verdict in self.verdicts],
+            "warnings": list(self.warnings),
         }
 
     def __str__(self) -> str:
@@ -64,12 +73,14 @@ class CheckReport:
         if self.verdicts:
             lines.append(table_of(self.verdicts))
             lines += [f"  {verdict.sentence}" for verdict in self.failures]
+        lines += [f"  warning: {text}" for text in self.warnings]
         return "\n".join(lines)
 
 
 def table_of(verdicts: tuple[LimitVerdict, ...]) -> str:
     """Verdicts as a short table."""
-    header = ("limit", "", "found", "allowed", "margin", "at", "payload")
+    warm = any(verdict.temperature is not None for verdict in verdicts)
+    header = ("limit", "", "found", "allowed", "margin", "at", "payload", *(("springs at",) if warm else ()))
     return grid(
         header,
         [
@@ -81,6 +92,7 @@ def table_of(verdicts: tuple[LimitVerdict, ...]) -> str:
                 shown(verdict.margin, verdict.unit, 3),
                 "" if verdict.at is None else shown(verdict.at, "rad"),
                 verdict.payload or "",
+                *(("" if verdict.temperature is None else celsius(verdict.temperature),) if warm else ()),
             )
             for verdict in verdicts
         ],
@@ -103,9 +115,10 @@ def check(document: PoiseFile | str | os.PathLike[str]) -> CheckReport:
     Raises
     ------
     PoiseFileError
-        The file cannot be read, or leaves springs to be designed.
+        The file cannot be read, leaves springs to be designed, or states a limit that needs a
+        number of a spring that is not given.
     InputError
-        A document in code that leaves springs to be designed.
+        A document in code of which one of the latter two is true.
 
     Examples
     --------
@@ -136,12 +149,40 @@ def document_at(document: PoiseFile | str | os.PathLike[str]) -> PoiseFile:
 
 
 def judge(document: PoiseFile) -> CheckReport:
-    """The verdicts on a document's limits, whatever it leaves open."""
+    """The verdicts on a document's limits, whatever it leaves open, and what is unwise about its springs."""
     verdicts = []
-    for limit in document.limits:
-        mechanism = document.with_payload(limit.payload)
-        low, high = mechanism.travel_or_turn if limit.over is None else limit.over
-        case = Case(mechanism, document.actuator, np.linspace(low, high, POSES), limit.payload)
+    with warnings.catch_warnings(record=True) as caught:
+        warnings.simplefilter("always", SpringWarning)
+        rods = {one.spring: one.rod for one in document.service}
+        check_gas_mounts(document.mechanism, rod_at=lambda name: rods.get(name, rods.get(None)))
+        for i, limit in enumerate(document.limits):
+            try:
+                verdicts.append(_worst(document, limit))
+            except PoiseFileError:
+                raise
+            except SpringpoiseError as error:
+                kind = InputError if document.path is None else PoiseFileError
+                raise kind(f"{document.called}: limits[{i + 1}]: {error}") from error
+    said = []
+    for one in caught:
+        if issubclass(one.category, SpringWarning):
+            said.append(str(one.message))
+        else:
+            warnings.warn_explicit(one.message, one.category, one.filename, one.lineno)
+    return CheckReport(document.called, tuple(verdicts), tuple(dict.fromkeys(said)))
+
+
+def _worst(document: PoiseFile, limit: Limit) -> LimitVerdict:
+    """The verdict on a limit, at the worst of its temperatures."""
+    loaded = document.with_payload(limit.payload)
+    low, high = loaded.travel_or_turn if limit.over is None else limit.over
+    poses = np.linspace(low, high, POSES)
+    verdicts = []
+    for temperature in limit.at_temperature or (None,):
+        mechanism = loaded
+        if temperature is not None:
+            mechanism = at_temperature(loaded, temperature, document.service)
+        case = Case(mechanism, document.actuator, poses, limit.payload, temperature, document.service)
         with np.errstate(all="ignore"):
             verdicts.append(limit.judge(case))
-    return CheckReport(document.called, tuple(verdicts))
+    return min(verdicts, key=lambda one: -math.inf if math.isnan(one.margin) else one.margin)

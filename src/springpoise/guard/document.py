@@ -14,6 +14,7 @@ from springpoise.guard.limits import Limit
 from springpoise.guard.openings import OpenSpring
 from springpoise.guard.place import nearest
 from springpoise.guard.requests import DesignRequest
+from springpoise.guard.service import Service
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
 
@@ -92,6 +93,8 @@ class PoiseFile:
     """More on what it is."""
     actuator: Actuator | None = None
     """Motor and gear; None for not given."""
+    service: tuple[Service, ...] = attrs.field(default=(), converter=_tuple)
+    """What is known of springs in service: how they change with temperature, how warm they may become."""
     payloads: tuple[Payload, ...] = attrs.field(default=(), converter=_tuple)
     """Named payloads, none of which is on the mechanism."""
     limits: tuple[Limit, ...] = attrs.field(default=(), converter=_tuple)
@@ -102,6 +105,8 @@ class PoiseFile:
     """Springs of which something is left open."""
     path: Path | None = attrs.field(default=None, eq=False)
     """The file that it was read from; None for one made in code."""
+    folder: Path = attrs.field(default=Path(), eq=False)
+    """What names of other files in it are relative to."""
     source: str | None = attrs.field(default=None, eq=False, repr=False)
     """The text that it was read from, whose comments and order a saved copy keeps; None for none."""
 
@@ -113,6 +118,7 @@ class PoiseFile:
             _kind(self.actuator, Actuator, "actuator")
         if self.design is not None:
             _kind(self.design, DesignRequest, "design")
+        _all_of(self.service, Service, "service")
         _all_of(self.payloads, Payload, "payloads")
         _all_of(self.limits, Limit, "limits")
         _all_of(self.open_springs, OpenSpring, "open_springs")
@@ -135,6 +141,16 @@ class PoiseFile:
         motor = self.actuator is not None and self.actuator.motor is not None
         mounts = self.all_mounts
         called = [mount.name or f"spring {i + 1}" for i, mount in enumerate(mounts)]
+        for i, service in enumerate(self.service):
+            if service.spring in [one.spring for one in self.service[:i]]:
+                raise InputError(
+                    f"service[{i + 1}].spring must be one that no other has, got {service.spring or 'none twice'!r}"
+                )
+            if self.design is None and service.spring is not None and service.spring not in called:
+                raise InputError(
+                    f"service[{i + 1}].spring must be the name of a spring, got {service.spring!r}"
+                    f"{nearest(service.spring, called)}"
+                )
         for i, limit in enumerate(self.limits):
             if limit.what == "motor current" and not motor:
                 raise InputError(f"limits[{i + 1}].what is {limit.what!r}, which needs an actuator with a motor")

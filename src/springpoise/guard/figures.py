@@ -14,6 +14,7 @@ from springpoise.guard.amounts import JSON_SUFFIX, finite_or_none
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.kinds import SPRINGS
 from springpoise.guard.limits import coordinate_unit
+from springpoise.guard.models import kind_of
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.springs.protocol import working_range_of
@@ -175,7 +176,7 @@ def _spring(mechanism: Mechanism, index: int, q: Array) -> SpringFigures:
     low, high = working_range_of(spring)
     level = 0.0 if q[0] <= 0.0 <= q[-1] else float(0.5 * (q[0] + q[-1]))
     at_level = float(mount.spring_length(mechanism.linkage, level))
-    kind = next((name for name, cls in SPRINGS.kinds.items() if type(spring) is cls), type(spring).__name__)
+    kind = kind_of(SPRINGS, spring) or type(spring).__name__
     fields = attrs.fields(type(spring)) if attrs.has(type(spring)) else ()
     return SpringFigures(
         name=mechanism.mount_name(index),

@@ -53,7 +53,7 @@ def load(path: str | os.PathLike[str]) -> PoiseFile:
     springpoise.errors.PoiseFileError: nowhere.poise.toml: cannot be read: No such file or directory
     """
     file = Path(path)
-    place = Place(str(path))
+    place = Place(str(path), folder=file.parent)
     raw = read_bytes(file, LARGEST_FILE)
     try:
         text = raw.decode("utf-8-sig")
@@ -151,18 +151,23 @@ def save(document: PoiseFile, path: str | os.PathLike[str]) -> None:
     PoiseFileError
         The file cannot be written; what was there before is untouched.
     """
-    write_whole(text_of(document), Path(path))
+    target = Path(path)
+    write_whole(text_of(document, folder=target.parent), target)
 
 
-def text_of(document: PoiseFile, opening: str = "") -> str:
-    """The text that :func:`save` writes, with a comment in front where one is given."""
+def text_of(document: PoiseFile, opening: str = "", folder: Path | None = None) -> str:
+    """The text that :func:`save` writes into a folder, with a comment in front where one is given.
+
+    Names of other files stay in it where they mean the same from that folder.
+    """
     after = tables_of(document)
-    place = Place(document.called)
+    place = Place(document.called, folder=document.folder)
+    there = place if folder is None else Place(document.called, folder=folder)
     if document.source is not None:
         with contextlib.suppress(SpringpoiseError):
             before: dict[str, Any] = tables_of(read_text(document.source, place))
             text = merged(document.source, before, after, opening)
-            if read_text(text, place) == document:
+            if read_text(text, there) == document:
                 return text
     head = "".join(f"# {line}\n" for line in opening.splitlines())
     return f"{head}\n{rendered(after)}" if head else rendered(after)

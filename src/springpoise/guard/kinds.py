@@ -13,35 +13,18 @@ from springpoise.guard.limits import (
     Stretch,
 )
 from springpoise.guard.models import Family, Registry
+from springpoise.guard.part_limits import BucklingMargin, FatigueMargin, ServiceTemperature, YieldMargin
 from springpoise.guard.requests import DesignRequest, FitRequest, SineRequest, StockRequest
+from springpoise.guard.spring_kinds import ANGULAR, SPRING_FAMILIES, SPRINGS
 from springpoise.linkages import Arm
 from springpoise.paths import Cable, JointTravel, Straight
 from springpoise.paths.protocol import Path
-from springpoise.springs import (
-    CompressionSpring,
-    ConstantForceSpring,
-    ExtensionSpring,
-    TorsionSpring,
-    ZeroLengthSpring,
-)
 from springpoise.springs.protocol import Spring
 
-__all__ = ["DESIGNS", "LIMITS", "LINKAGES", "PATHS", "REGISTRY", "SPRINGS"]
+__all__ = ["ANGULAR_REGISTRY", "DESIGNS", "LIMITS", "LINKAGES", "PATHS", "REGISTRY", "SPRINGS"]
 
 LINKAGES: dict[str, type] = {"arm": Arm}
 """Sections of which a file has exactly one, and the linkage that each describes."""
-
-SPRINGS = Family(
-    "kind",
-    "spring",
-    {
-        "extension": ExtensionSpring,
-        "zero length": ZeroLengthSpring,
-        "compression": CompressionSpring,
-        "torsion": TorsionSpring,
-        "constant force": ConstantForceSpring,
-    },
-)
 
 PATHS = Family("kind", "path", {"straight": Straight, "cable": Cable, "joint travel": JointTravel})
 
@@ -50,11 +33,26 @@ LIMITS = Family(
     "limit",
     {
         cls.what: cls
-        for cls in (ResidualTorque, HoldingTorque, Stretch, StoredEnergy, BalanceAngles, MotorCurrent, PivotLoad)
+        for cls in (
+            ResidualTorque,
+            HoldingTorque,
+            Stretch,
+            StoredEnergy,
+            BalanceAngles,
+            MotorCurrent,
+            PivotLoad,
+            YieldMargin,
+            FatigueMargin,
+            BucklingMargin,
+            ServiceTemperature,
+        )
     },
 )
 
 DESIGNS = Family("method", "design", {cls.method: cls for cls in (StockRequest, SineRequest, FitRequest)})
 
-REGISTRY: Registry = {Spring: SPRINGS, Path: PATHS, Limit: LIMITS, DesignRequest: DESIGNS}
+REGISTRY: Registry = {**SPRING_FAMILIES, Path: PATHS, Limit: LIMITS, DesignRequest: DESIGNS}
 """The family for each type of a field that says only what it is for."""
+
+ANGULAR_REGISTRY: Registry = {**REGISTRY, Spring: ANGULAR}
+"""The same for springs whose coordinate is an angle."""

@@ -43,6 +43,16 @@ def _rising(instance: Any, attribute: attrs.Attribute[Any], value: Any) -> None:
         raise InputError(f"{type(instance).__name__}.{attribute.name} must be (lower, higher) rad, got {value}")
 
 
+def _temperatures(value: Any) -> Any:
+    if value is None:
+        return None
+    name = "Limit.at_temperature"
+    given = tuple(units.kelvin(item, name) for item in ([value] if isinstance(value, str | float | int) else value))
+    if not given:
+        raise InputError(f"{name} must be at least one temperature, got none")
+    return given
+
+
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)
 class Limit:
     """What all limits share.
@@ -62,6 +72,10 @@ class Limit:
     """Range of poses that is judged (from, to) [rad]; None for the travel."""
     payload: str | None = None
     """Name of the payload that is on the mechanism; None for none."""
+    at_temperature: tuple[float, ...] | None = attrs.field(
+        default=None, converter=_temperatures, metadata={"unit": "K"}
+    )
+    """Temperatures of the springs at which it is judged [K], the worst counts; None for that of their values."""
 
     def judge(self, case: Case) -> LimitVerdict:
         """The verdict on a case."""

@@ -9,19 +9,34 @@ from __future__ import annotations
 
 import functools
 import inspect
+import itertools
 import re
 import types
 import typing
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from typing import Any, NamedTuple
 
 import attrs
+import numpy as np
 
+from springpoise import units
 from springpoise.errors import InputError, SpringpoiseError
 from springpoise.guard.amounts import written
+from springpoise.guard.field_units import FIELD_UNITS
 from springpoise.guard.place import Place, nearest
 
-__all__ = ["Family", "Registry", "fields_of", "read_kind", "read_model", "write_model"]
+__all__ = ["Family", "Form", "Registry", "fields_of", "kind_of", "read_kind", "read_model", "write_kind", "write_model"]
+
+
+class Form(NamedTuple):
+    """One or more models whose fields share a table, and from which something else is made."""
+
+    models: tuple[type, ...]
+    """The models; no two of them have a key in common."""
+    make: Callable[..., Any]
+    """Makes it of a place and the models."""
+    of: Callable[[Any], tuple[Any, ...] | None]
+    """The models that something was made of; None where it was not, or where they no longer tell it."""
 
 
 class Family(NamedTuple):
@@ -31,8 +46,12 @@ class Family(NamedTuple):
     """The key that names it."""
     noun: str
     """What they are called in messages."""
-    kinds: Mapping[str, type]
-    """Names and classes."""
+    kinds: Mapping[str, type | Form]
+    """Names, and a class or a form for each."""
+    named: Mapping[str, Any] = types.MappingProxyType({})
+    """Objects for which a name alone may stand, in place of a table."""
+    plain: Callable[[Any], Any] | None = None
+    """What to write of a model of which no kind tells all; None to refuse it."""
 
 
 Registry: typing.TypeAlias = "Mapping[Any, Family]"
@@ -57,6 +76,8 @@ def _fields_of(cls: Any) -> tuple[_Field, ...]:
     hints = typing.get_type_hints(cls)
     found = []
     for attribute in attrs.fields(cls):
+        if not attribute.init:
+            continue
         hint = hints.get(attribute.name, Any)
         union = isinstance(hint, types.UnionType) or typing.get_origin(hint) is typing.Union
         options = typing.get_args(hint) if union else (hint,)
@@ -65,7 +86,7 @@ def _fields_of(cls: Any) -> tuple[_Field, ...]:
                 key=attribute.metadata.get("key", attribute.name),
                 attribute=attribute,
                 hints=tuple(option for option in options if option is not type(None)),
-                unit=attribute.metadata.get("unit"),
+                unit=attribute.metadata.get("unit") or FIELD_UNITS.get(f"{cls.__name__}.{attribute.name}"),
                 required=attribute.default is attrs.NOTHING,
             )
         )
@@ -78,6 +99,10 @@ def _fields_of(cls: Any) -> tuple[_Field, ...]:
 
 def read_kind(family: Family, value: Any, place: Place, registry: Registry) -> Any:
     """The model of which a table names the kind."""
+    if family.named and isinstance(value, str):
+        if value not in family.named:
+            raise place.error(f"must be a {family.noun}, got {Place.shown(value)}{nearest(value, family.named)}")
+        return family.named[value]
     table = place.table(value)
     if family.key not in table:
         raise place.error(f"must have the key {family.key}, one of {', '.join(family.kinds)}")
@@ -87,7 +112,24 @@ def read_kind(family: Family, value: Any, place: Place, registry: Registry) -> A
             f"must be a kind of {family.noun}, got {Place.shown(kind)}{nearest(kind, family.kinds)}"
         )
     rest = {key: item for key, item in table.items() if key != family.key}
-    return read_model(family.kinds[kind], rest, place, registry)
+    found = family.kinds[kind]
+    return _read_form(found, rest, place, registry) if isinstance(found, Form) else read_model(found, rest, place, registry)
+
+
+def _read_form(form: Form, table: Mapping[str, Any], place: Place, registry: Registry) -> Any:
+    """What is made of the models that share a table."""
+    fields = [fields_of(model) for model in form.models]
+    together = list(itertools.chain(*fields))
+    place.check_keys(table, [f.key for f in together], [f.key for f in together if f.required])
+    parts = []
+    for model, own in zip(form.models, fields, strict=True):
+        keys = {field.key for field in own}
+        mine = {key: item for key, item in table.items() if key in keys}
+        parts.append(read_model(model, mine, place, registry))
+    try:
+        return form.make(place, *parts)
+    except SpringpoiseError as error:
+        raise place.failing(error) from error
 
 
 def read_model(cls: type, value: Any, place: Place, registry: Registry) -> Any:
@@ -155,16 +197,24 @@ def _own_text(field: _Field, text: str, place: Place) -> Any:
 
 def _amount(field: _Field, value: Any, place: Place) -> Any:
     """A value with a unit as the texts that the model's own converter reads, or as a plain number."""
-    several = next((typing.get_args(h) for h in field.hints if typing.get_origin(h) is tuple), None)
-    if several is None:
-        _check_leaf(field.unit, value, place)
+    return _leaves(next((hint for hint in field.hints if _is_list(hint)), None), field.unit, value, place)
+
+
+def _is_list(hint: Any) -> bool:
+    return typing.get_origin(hint) in {tuple, np.ndarray}
+
+
+def _leaves(hint: Any, unit: str | None, value: Any, place: Place) -> Any:
+    if not _is_list(hint):
+        _check_leaf(unit, value, place)
         return value
     entries = place.entries(value)
-    if Ellipsis not in several and len(entries) != len(several):
-        raise place.error(f"must be a list of {len(several)} values, got {len(entries)}: {Place.shown(value)}")
-    for at, item in entries:
-        _check_leaf(field.unit, item, at)
-    return tuple(item for _, item in entries)
+    inner: tuple[Any, ...] = typing.get_args(hint) if typing.get_origin(hint) is tuple else (None, Ellipsis)
+    if Ellipsis in inner:
+        inner = (inner[0],) * len(entries)
+    if len(entries) != len(inner):
+        raise place.error(f"must be a list of {len(inner)} values, got {len(entries)}: {Place.shown(value)}")
+    return tuple(_leaves(one, unit, item, at) for one, (at, item) in zip(inner, entries, strict=True))
 
 
 def _check_leaf(unit: str | None, value: Any, place: Place) -> None:
@@ -187,8 +237,12 @@ def _plain(hint: Any, value: Any, place: Place, registry: Registry) -> Any:
         if options and all(attrs.has(option) for option in options):
             return tuple(_one_of(options, item, at, registry) for at, item in place.entries(value))
         return tuple(_plain(inner, item, at, registry) for at, item in place.entries(value))
-    if hint is str:
+    if hint is str or typing.get_origin(hint) is typing.Literal:
         return place.text(value)
+    if hint is Any:
+        if isinstance(value, bool) or not isinstance(value, str | int | float):
+            raise place.error(f"must be a text or a number, got {Place.shown(value)}")
+        return value
     wanted = {int: "a whole number", bool: "true or false"}.get(hint)
     if wanted is None:
         raise TypeError(f"a field of type {hint!r} at {place.keys} cannot be read from a file")
@@ -208,7 +262,44 @@ def _one_of(options: tuple[Any, ...], value: Any, place: Place, registry: Regist
 # writing
 
 
-def write_model(model: Any, registry: Registry, family: Family | None = None) -> dict[str, Any]:
+def kind_of(family: Family, model: Any) -> str | None:
+    """The name of a model's kind; None where no kind tells all of it."""
+    for name, found in family.kinds.items():
+        if isinstance(found, Form) and found.of(model) is not None:
+            return name
+        if type(model) is found:
+            return name
+    return None
+
+
+def write_kind(model: Any, registry: Registry, family: Family) -> Any:
+    """What :func:`read_kind` reads back as an equal object: a table that names its kind, or a name alone.
+
+    Raises
+    ------
+    InputError
+        A model of a kind that files do not know, or a field that holds an array.
+    """
+    for name, found in family.named.items():
+        if model == found:
+            return name
+    kind = kind_of(family, model)
+    if kind is None and family.plain is not None:
+        model = family.plain(model)
+        kind = kind_of(family, model)
+    if kind is None:
+        known = ", ".join([*family.named, *family.kinds])
+        raise InputError(
+            f"a {type(model).__name__} cannot be written to a file, only these kinds of {family.noun}: {known}"
+        )
+    found = family.kinds[kind]
+    table = {family.key: kind}
+    for part in (found.of(model) or ()) if isinstance(found, Form) else (model,):
+        table |= write_model(part, registry)
+    return table
+
+
+def write_model(model: Any, registry: Registry) -> dict[str, Any]:
     """The table that :func:`read_model` reads back as an equal object; fields at their default are left out.
 
     Raises
@@ -217,17 +308,11 @@ def write_model(model: Any, registry: Registry, family: Family | None = None) ->
         A model of a kind that files do not know, or a field that holds an array.
     """
     table: dict[str, Any] = {}
-    if family is not None:
-        kind = next((name for name, cls in family.kinds.items() if type(model) is cls), None)
-        if kind is None:
-            raise InputError(
-                f"a {type(model).__name__} cannot be written to a file, only these kinds of {family.noun}: "
-                f"{', '.join(family.kinds)}"
-            )
-        table[family.key] = kind
     for field in fields_of(type(model)):
         value = getattr(model, field.attribute.name)
-        if value is None or (not field.required and value == _default(field.attribute)):
+        if value is None or (
+            not field.required and units.comparable(value) == units.comparable(_default(field.attribute))
+        ):
             continue
         table[field.key] = _write(field, value, registry, f"{type(model).__name__}.{field.attribute.name}")
     return table
@@ -242,18 +327,29 @@ def _write(field: _Field, value: Any, registry: Registry, name: str) -> Any:
     if "write" in field.attribute.metadata:
         return field.attribute.metadata["write"](value)
     if field.unit is not None:
-        return _written(value, field.unit, name)
-    for hint in field.hints:
-        if hint in registry:
-            return write_model(value, registry, registry[hint])
+        return _written(value, field.unit, name, any(_is_list(hint) for hint in field.hints))
+    for hint, family in _families(field, registry):
+        if isinstance(value, tuple) and typing.get_origin(hint) is tuple:
+            return [write_kind(item, registry, family) for item in value]
+        return write_kind(value, registry, family)
     if isinstance(value, tuple):
         return [write_model(item, registry) if attrs.has(type(item)) else item for item in value]
     return write_model(value, registry) if attrs.has(type(value)) else value
 
 
-def _written(value: Any, unit: str, name: str) -> Any:
+def _families(field: _Field, registry: Registry) -> Iterator[tuple[Any, Family]]:
+    """The family of a field's type, or of its entries' type."""
+    for hint in field.hints:
+        inner, *_ = typing.get_args(hint) if typing.get_origin(hint) is tuple else (hint,)
+        if inner in registry:
+            yield hint, registry[inner]
+
+
+def _written(value: Any, unit: str, name: str, several: bool) -> Any:
+    if several and isinstance(value, np.ndarray) and value.ndim == 1:
+        value = tuple(value.tolist())
     if isinstance(value, tuple):
-        return [_written(item, unit, name) for item in value]
+        return [_written(item, unit, name, several) for item in value]
     if not isinstance(value, float | int):
         raise InputError(f"{name} must be a single value to be written to a file, got {type(value).__name__}")
     return float(value) if unit == "1" else written(value, unit)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import difflib
 import reprlib
 from collections.abc import Iterable, Mapping
+from pathlib import Path
 from typing import Any
 
 import attrs
@@ -25,14 +26,16 @@ class Place:
     """What the file is called in messages."""
     keys: str = ""
     """Path of keys, such as ``"springs[1].spring.rate"``; empty for the file as a whole."""
+    folder: Path = Path()
+    """What names of other files in it are relative to."""
 
     def key(self, name: str) -> Place:
         """The place of a key in the table that stands here."""
-        return Place(self.file, f"{self.keys}.{name}" if self.keys else name)
+        return attrs.evolve(self, keys=f"{self.keys}.{name}" if self.keys else name)
 
     def entry(self, index: int) -> Place:
         """The place of an entry, ``index`` being counted from 0 as in Python."""
-        return Place(self.file, f"{self.keys}[{index + 1}]")
+        return attrs.evolve(self, keys=f"{self.keys}[{index + 1}]")
 
     def error(self, text: str) -> PoiseFileError:
         """The complaint about what stands here."""

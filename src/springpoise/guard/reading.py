@@ -14,11 +14,13 @@ from springpoise.feedforward import Actuator
 from springpoise.gravity import STANDARD_GRAVITY, local, seen_from_base
 from springpoise.guard.amounts import written
 from springpoise.guard.document import Payload, PoiseFile
-from springpoise.guard.kinds import DESIGNS, LIMITS, LINKAGES, REGISTRY, SPRINGS
-from springpoise.guard.models import fields_of, read_kind, read_model, write_model
+from springpoise.guard.kinds import ANGULAR_REGISTRY, DESIGNS, LIMITS, LINKAGES, REGISTRY, SPRINGS
+from springpoise.guard.models import fields_of, read_kind, read_model, write_kind, write_model
 from springpoise.guard.openings import OPEN, ROOM, STAND_INS, OpenSpring
 from springpoise.guard.place import Place
+from springpoise.guard.service import Service
 from springpoise.mechanism import Friction, Mechanism, SpringMount
+from springpoise.paths import JointTravel
 
 __all__ = ["SCHEMA", "document_of", "tables_of"]
 
@@ -34,6 +36,7 @@ SECTIONS = (
     "travel",
     "friction",
     "springs",
+    "service",
     "payloads",
     "actuator",
     "limits",
@@ -127,6 +130,10 @@ def document_of(tables: Mapping[str, Any], place: Place, *, path: Path | None, s
             read_model(Payload, table, at, REGISTRY)
             for at, table in place.key("payloads").entries(tables.get("payloads", []))
         ],
+        "service": [
+            read_model(Service, table, at, REGISTRY)
+            for at, table in place.key("service").entries(tables.get("service", []))
+        ],
         "limits": [
             read_kind(LIMITS, table, at, REGISTRY)
             for at, table in place.key("limits").entries(tables.get("limits", []))
@@ -141,7 +148,9 @@ def document_of(tables: Mapping[str, Any], place: Place, *, path: Path | None, s
             travel=None if travel is None else (travel.first, travel.last),
             gravity=pull,
         )
-        return PoiseFile(mechanism=mechanism, open_springs=opened, path=path, source=source, **parts)
+        return PoiseFile(
+            mechanism=mechanism, open_springs=opened, path=path, source=source, folder=place.folder, **parts
+        )
     except SpringpoiseError as error:
         raise place.failing(error) from error
 
@@ -163,7 +172,7 @@ def _mount(value: Any, place: Place) -> tuple[SpringMount, tuple[str, ...]]:
     spring = table.get("spring")
     if isinstance(spring, Mapping):
         cls = SPRINGS.kinds.get(str(spring.get(SPRINGS.key)))
-        known = {field.key: field.unit or "1" for field in fields_of(cls)} if cls is not None else {}
+        known = {field.key: field.unit or "1" for field in fields_of(cls)} if isinstance(cls, type) else {}
         table["spring"] = spring = dict(spring)
         for name, stand_in in STAND_INS.items():
             if name in known and spring.get(name) == OPEN:
@@ -209,19 +218,21 @@ def tables_of(document: PoiseFile) -> dict[str, Any]:
     springs = [_mount_table(mount, opened.get(i, ())) for i, mount in enumerate(document.all_mounts)]
     lists = {
         "springs": springs,
+        "service": [write_model(service, REGISTRY) for service in document.service],
         "payloads": [write_model(payload, REGISTRY) for payload in document.payloads],
-        "limits": [write_model(limit, REGISTRY, LIMITS) for limit in document.limits],
+        "limits": [write_kind(limit, REGISTRY, LIMITS) for limit in document.limits],
     }
     tables |= {name: entries for name, entries in lists.items() if entries}
     if document.actuator is not None:
         tables["actuator"] = write_model(document.actuator, REGISTRY)
     if document.design is not None:
-        tables["design"] = write_model(document.design, REGISTRY, DESIGNS)
+        tables["design"] = write_kind(document.design, REGISTRY, DESIGNS)
     return tables
 
 
 def _mount_table(mount: SpringMount, opened: tuple[str, ...]) -> dict[str, Any]:
-    table = write_model(mount, REGISTRY)
+    angular = isinstance(mount.path, JointTravel)
+    table = write_model(mount, ANGULAR_REGISTRY if angular else REGISTRY)
     for name in opened:
         (table if name == ROOM else table["spring"])[name] = OPEN
     order = ("name", "count", ROOM)

@@ -31,6 +31,13 @@ WIDTH = 100
 END_OF_RANGE = {
     "compression": ("going solid", "going slack"),
     "torsion": ("the lower end of its range", "the upper end of its range"),
+    "compression coil": ("the shortest that its limits permit", "going slack"),
+    "torsion coil": ("the lower end of its range", "the upper end of its range"),
+    "spiral": ("the lower end of its range", "the upper end of its range"),
+    "torque curve": ("let down", "wound up"),
+    "gas spring": ("rod fully in", "rod fully out"),
+    "measured": ("the first reading", "the last reading"),
+    "measured torsion": ("the first reading", "the last reading"),
 }
 """What lies beyond the two ends of a spring's working range, where it is not slack and overstretched."""
 
@@ -102,13 +109,17 @@ def _solved_blocks(found: Design) -> list[str]:
     )
     if found.report is not None:
         blocks.append(_headed(f"Limits: {found.report.status}", _limits(found.report)))
+        if found.report.warnings:
+            told = "\n".join(_wrapped(f"warning: {text}", "  ") for text in found.report.warnings)
+            blocks.append(_headed("Warnings", told))
     return blocks
 
 
 def _spring_block(one: SpringFigures) -> str:
     times = f"{one.count} x " if one.count > 1 else "1 x "
     sizes = ", ".join(f"{name.replace('_', ' ')} {shown(value, unit)}" for name, value, unit in one.sizes)
-    lines = [_wrapped(f"{times}{one.name}, {one.kind} spring: {sizes}", "  ")]
+    kind = one.kind if one.kind.endswith(("spring", "coil", "tube")) else f"{one.kind} spring"
+    lines = [_wrapped(f"{times}{one.name}, {kind}{': ' if sizes else ''}{sizes}", "  ")]
     if one.places:
         lines.append(
             grid(
@@ -218,7 +229,8 @@ def _search_blocks(found: Design) -> list[str]:
 
 def _ranking(candidates: Iterable[StockCandidate], chosen: StockCandidate | None) -> str:
     listed = list(candidates)
-    others = [name for name in listed[0].others if "price" in name or "cost" in name][:1]
+    others = [name for name in listed[0].others if "price" in name.lower() or "cost" in name.lower()][:1]
+    heads = [name.replace(" [", " ").replace("]", "") for name in others]
     header = ["part", "", "attach mm", "anchor mm", "worst N*m", "%", "slack mm", "stretch mm", "pivot N"]
     lines = [
         [
@@ -235,7 +247,7 @@ def _ranking(candidates: Iterable[StockCandidate], chosen: StockCandidate | None
         ]
         for one in listed
     ]
-    return grid([*header, *others], lines)
+    return grid([*header, *heads], lines)
 
 
 def _headed(heading: str, body: str) -> str:

@@ -10,7 +10,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from springpoise.feedforward import Actuator
-from springpoise.guard.amounts import JSON_SUFFIX, finite_or_none, shown
+from springpoise.guard.amounts import JSON_SUFFIX, celsius, finite_or_none, shown
+from springpoise.guard.service import Service
 from springpoise.mechanism import Mechanism
 
 __all__ = ["Case", "LimitVerdict", "broken", "greatest", "judged", "least"]
@@ -30,6 +31,10 @@ class Case:
     """Poses [rad], shape (n,)."""
     payload: str | None
     """Name of the payload; None for none."""
+    temperature: float | None = None
+    """Temperature of the springs [K]; None for that of their values."""
+    service: tuple[Service, ...] = ()
+    """What is known of the springs in service."""
 
 
 @attrs.frozen(kw_only=True)
@@ -52,6 +57,8 @@ class LimitVerdict:
     """Pose where the value occurs [rad]; None where it belongs to no pose."""
     payload: str | None = None
     """Payload that was on the mechanism; None for none."""
+    temperature: float | None = None
+    """Temperature of the springs [K]; None for that of their values."""
     about: str = ""
     """What the value is of where that is not plain, such as a spring's name."""
     sentence: str = ""
@@ -68,6 +75,7 @@ class LimitVerdict:
             f"margin{suffix}": finite_or_none(self.margin),
             "at_rad": finite_or_none(self.at),
             "payload": self.payload,
+            "temperature_K": finite_or_none(self.temperature),
             "about": self.about,
             "sentence": self.sentence,
         }
@@ -105,6 +113,7 @@ def judged(
     about: str = "",
     subject: str = "",
     also: str = "",
+    hint: str = "is an end of a cable inside a disc there, or a value far too large?",
 ) -> LimitVerdict:
     """The verdict on a value that has to be at most, or at least, what is allowed.
 
@@ -116,14 +125,15 @@ def judged(
         What the sentence begins with; by default ``what``.
     also
         Words that follow the value in the sentence.
+    hint
+        What is asked where the value is not a number.
     """
     margin = value - allowed if at_least else allowed - value
     holds = bool(margin >= 0)  # NaN does not hold
     where = "" if at is None or (subject and not math.isnan(value)) else f" at {shown(at, 'rad')}"
-    load = f" with payload {case.payload!r}" if case.payload is not None else ""
+    load = _conditions(case)
     head = f"{subject or what}{f' of {about}' if about else ''}{load}"
     if math.isnan(margin) or margin == -math.inf:
-        hint = "is an end of a cable inside a disc there, or a value far too large?"
         sentence = f"{head} is not a number{where}; {hint}"
     else:
         rule = "at least" if at_least else "at most"
@@ -139,9 +149,15 @@ def judged(
         unit=unit,
         at=at,
         payload=case.payload,
+        temperature=case.temperature,
         about=about,
         sentence=sentence,
     )
+
+
+def _conditions(case: Case) -> str:
+    load = f" with payload {case.payload!r}" if case.payload is not None else ""
+    return load + (f" at {celsius(case.temperature)}" if case.temperature is not None else "")
 
 
 def broken(case: Case, what: str, allowed: float, unit: str, sentence: str) -> LimitVerdict:
@@ -155,5 +171,6 @@ def broken(case: Case, what: str, allowed: float, unit: str, sentence: str) -> L
         unit=unit,
         at=None,
         payload=case.payload,
+        temperature=case.temperature,
         sentence=f"{what}: {sentence}",
     )

@@ -6,11 +6,14 @@ to the ground, a loop closed by two bodies.
 
 from __future__ import annotations
 
+import math
 from typing import NamedTuple
 
-from springpoise.carriers import Carrier
+from springpoise.carriers import Carrier, namespace
 
-__all__ = ["GROUND", "Frame", "Rate", "still"]
+__all__ = ["GROUND", "Frame", "Rate", "divisor", "still"]
+
+GROUND = "ground"
 
 
 class Rate(NamedTuple):
@@ -71,4 +74,6 @@ def still(joints: int) -> Frame:
     return Frame(0.0, 0.0, 1.0, 0.0, (Rate(0.0, 0.0, 0.0),) * joints)
 
 
-GROUND = "ground"
+def divisor(value: Carrier) -> Carrier:
+    """The value, NaN where it is zero: nothing is known at a dead point, and floats must not raise there."""
+    return namespace(value).where(value == 0.0, math.nan, value)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from typing import Any, TypeAlias
 
@@ -40,6 +41,12 @@ class MemberLinkage:
     def joint_names(self) -> tuple[str, ...]:
         """Names of the links whose joints are moved by themselves, in the order of ``q``."""
         return tuple(m.name for m in self.members if isinstance(m, Link) and m.follows is None)
+
+    @property
+    def joint_units(self) -> tuple[str, ...]:
+        """Unit of each component of ``q``: ``"rad"``, or ``"m"`` for a prismatic joint."""
+        unit = {"revolute": "rad", "prismatic": "m"}
+        return tuple(unit[m.joint] for m in self.members if isinstance(m, Link) and m.follows is None)
 
     @property
     def joint_count(self) -> int:
@@ -88,7 +95,16 @@ class MemberLinkage:
         return Point(self.links[-1].name, (self.links[-1].length, 0.0))
 
     def with_body(self, body: Body, frame: str) -> Any:
-        """The same linkage with one more body in one of its frames."""
+        """The same linkage with one more body in one of its frames.
+
+        Raises
+        ------
+        InputError
+            A frame that the linkage does not have, or the ground.
+        """
+        moving = self.frames[1:]
+        if frame not in moving:
+            raise InputError(f"frame must be one of {', '.join(map(repr, moving))}, got {frame!r}")
         return self._changed(lambda link: _with_body(link, body, frame))
 
     def without_body(self, name: str) -> Any:
@@ -105,22 +121,23 @@ class MemberLinkage:
 
     def missing(self, q: Carrier) -> Carrier:
         """Length by which the worst loop fails to close [m]: not positive where all close, -inf without loops."""
-        loops = self._standing(q)[1]
-        worst: Carrier = -float("inf")
-        for loop in loops.values():
-            worst = (
-                loop.missing
-                if isinstance(worst, float)
-                else namespace(worst, loop.missing).maximum(worst, loop.missing)
-            )
+        worst: Carrier = -math.inf
+        for loop in self._standing(q)[1].values():
+            # A loop on one that does not close is nowhere, and lacks NaN.
+            xp = namespace(worst, loop.missing)
+            worst = xp.where(loop.missing > worst, loop.missing, worst)
         return worst
 
     def dead_point_margin(self, q: Carrier) -> Carrier:
-        """Least sine of the angle between two links of a loop [1]: 0 at a dead point, 1 farthest from it."""
+        """Least sine of the angle between two links of a loop [1]: 0 at a dead point, 1 farthest from it.
+
+        For a slider, of the angle between the coupler and the normal of its line. NaN where a loop
+        does not close.
+        """
         least: Carrier = 1.0
         for loop in self._standing(q)[1].values():
             spread = namespace(loop.spread).abs(loop.spread)
-            least = namespace(least, spread).minimum(least + 0.0 * spread, spread)
+            least = namespace(least, spread).minimum(least, spread)
         return least
 
     def pivot_forces(self, applied: Sequence[AppliedForce], q: Carrier) -> tuple[tuple[Carrier, ...], ...]:
@@ -160,6 +177,10 @@ class MemberLinkage:
                         f"{owner} must build each member on earlier bodies ({', '.join(sorted(known))}), "
                         f"got {base.body!r}, which {when}, for {_links_of(member)[0].name!r}"
                     )
+                if base is not None and len(base.at) != 2:
+                    raise InputError(
+                        f"Point.at must be (x, y) in m on a {owner}, got {base.at} for {_links_of(member)[0].name!r}"
+                    )
             for link in _links_of(member):
                 for body in (*link.bodies, *(link.carried or ())):
                     if len(body.com) != 2:
@@ -175,7 +196,7 @@ class MemberLinkage:
 
     def _standing(self, q: Carrier, until: str | None = None) -> tuple[dict[str, Frame], dict[str, Assembled]]:
         """Frames by name and loops by the name of their first link, as far as a body."""
-        driven = dict(zip(self.joint_names, joints_of(q, self.joint_count), strict=True))
+        driven = dict(zip(self.joint_names, self._joints(q), strict=True))
         frames, loops = {GROUND: still(self.joint_count)}, {}
         base = frames[GROUND]  # where a link without a stated pivot sits
         for member in self.members:
@@ -193,6 +214,16 @@ class MemberLinkage:
                 if link.carried is not None:
                     frames[link.carried_name] = base.level()
         return frames, loops
+
+    def _joints(self, q: Carrier) -> tuple[Carrier, ...]:
+        count = self.joint_count
+        if count > 1:
+            given = (len(q),) if isinstance(q, tuple | list) else getattr(q, "shape", ())[-1:]
+            if given != (count,):
+                raise InputError(
+                    f"q must be of shape (..., {count}) or {count} components for {count} joints, got {q!r}"
+                )
+        return joints_of(q, count)
 
     def _changed(self, change: Any) -> Any:
         """The same linkage with every link changed by a function, wherever its fields hold links."""

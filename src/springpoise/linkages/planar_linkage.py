@@ -7,12 +7,13 @@ from collections.abc import Sequence
 from typing import Any, Literal
 
 import attrs
+import numpy as np
 
 from springpoise import units
 from springpoise.carriers import Carrier
 from springpoise.errors import InputError, InputTypeError
 from springpoise.linkages.body import Point
-from springpoise.linkages.dyads import Dyad, SliderDyad
+from springpoise.linkages.dyads import Dyad, SliderDyad, one_of_two
 from springpoise.linkages.frames import GROUND
 from springpoise.linkages.link import Link
 from springpoise.linkages.members import Member, MemberLinkage
@@ -32,10 +33,24 @@ def _members(value: Any) -> tuple[Member, ...]:
     return tuple(items)
 
 
-def _unreachable(value: Any) -> Unreachable:
+def _error_or_nan(instance: object, attribute: attrs.Attribute[Any], value: Any) -> None:
+    """Validator: what to do at a pose that cannot be."""
     if value not in ("error", "nan"):
-        raise InputError(f"unreachable must be 'error' or 'nan', got {value!r}")
-    return "nan" if value == "nan" else "error"
+        raise InputError(f"{type(instance).__name__}.{attribute.name} must be 'error' or 'nan', got {value!r}")
+
+
+def _crank(instance: object, attribute: attrs.Attribute[Any], link: Any) -> None:
+    """Validator: a driven link with a length, whose pivot the linkage states."""
+    name = f"{type(instance).__name__}.{attribute.name}"
+    if not isinstance(link, Link):
+        raise InputTypeError(f"{name} must be a Link, got {link!r}")
+    if link.joint != "revolute" or link.follows is not None or link.pivot is not None:
+        raise InputError(
+            f"{name} must turn by itself on a pivot that the {type(instance).__name__} states, got {link.name!r} with a "
+            "pivot, a coupling or a prismatic joint; build others as a PlanarLinkage"
+        )
+    if isinstance(link.length, float | np.ndarray) and not np.all(link.length > 0):
+        raise InputError(f"Link.length must be > 0 m for {name}, got {link.length} for {link.name!r}")
 
 
 @attrs.frozen(field_transformer=units.named_fields)
@@ -51,7 +66,7 @@ class PlanarLinkage(MemberLinkage):
 
     parts: tuple[Member, ...] = attrs.field(converter=_members)
     """Links and dyads, in the order in which they are built one on another."""
-    unreachable: Unreachable = attrs.field(default="error", converter=_unreachable, kw_only=True)
+    unreachable: Unreachable = attrs.field(default="error", validator=_error_or_nan, kw_only=True)
     """What a mechanism does at a pose where a loop cannot close: ``"error"``, or ``"nan"`` for NaN results."""
 
     def __attrs_post_init__(self) -> None:
@@ -61,12 +76,6 @@ class PlanarLinkage(MemberLinkage):
     def members(self) -> tuple[Member, ...]:
         """The parts."""
         return self.parts
-
-
-def _grounded(link: Any, name: str, pivot: Point) -> Link:
-    if not isinstance(link, Link):
-        raise InputTypeError(f"{name} must be a Link, got {link!r}")
-    return attrs.evolve(link, pivot=pivot)
 
 
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)
@@ -82,7 +91,7 @@ class FourBar(MemberLinkage):
         Something that is not a link, a link without a length, an unknown branch.
     """
 
-    crank: Link
+    crank: Link = attrs.field(validator=_crank)
     """The driven link, at the ground's origin."""
     coupler: Link
     """The link between crank and rocker."""
@@ -90,9 +99,9 @@ class FourBar(MemberLinkage):
     """The link on the second pivot."""
     second_pivot: tuple[Carrier, Carrier] = attrs.field(converter=units.metre_pair)
     """Ground coordinates of the rocker's pivot [m]."""
-    branch: int = 1
+    branch: int = attrs.field(default=1, validator=one_of_two)
     """+1 where the joint of coupler and rocker lies to the left of the way from crank to second pivot, -1 to the right."""
-    unreachable: Unreachable = attrs.field(default="error", converter=_unreachable)
+    unreachable: Unreachable = attrs.field(default="error", validator=_error_or_nan)
     """What a mechanism does at a pose where the loop cannot close: ``"error"``, or ``"nan"`` for NaN results."""
 
     def __attrs_post_init__(self) -> None:
@@ -101,7 +110,7 @@ class FourBar(MemberLinkage):
     @property
     def members(self) -> tuple[Member, ...]:
         """The crank, and coupler and rocker as a dyad."""
-        crank = _grounded(self.crank, "FourBar.crank", Point(GROUND, (0.0, 0.0)))
+        crank = attrs.evolve(self.crank, pivot=Point(GROUND, (0.0, 0.0)))
         ends = Point(crank.name, (crank.length, 0.0)), Point(GROUND, self.second_pivot)
         return crank, Dyad(first=self.coupler, last=self.rocker, between=ends, branch=self.branch)
 
@@ -110,8 +119,18 @@ class FourBar(MemberLinkage):
 
         One range, or two where the crank can pass neither dead point; the ends are dead points.
         None where the lengths never meet; a full turn for a crank that goes round.
+
+        Raises
+        ------
+        InputError
+            Lengths that are arrays, or a second pivot on the first.
         """
+        sizes = (self.crank.length, self.coupler.length, self.rocker.length, self.crank.skew, *self.second_pivot)
+        if not all(isinstance(size, float) for size in sizes):
+            raise InputError("FourBar.closable must be of one linkage, got lengths that are arrays")
         ground = math.hypot(*self.second_pivot)
+        if ground == 0.0:
+            raise InputError("FourBar.second_pivot must lie away from the crank's pivot, got (0.0, 0.0) m")
         line = math.atan2(self.second_pivot[1], self.second_pivot[0]) - self.crank.skew
         l1, l2, l3 = self.crank.length, self.coupler.length, self.rocker.length
 
@@ -145,9 +164,9 @@ class FiveBar(MemberLinkage):
         Something that is not a link, a link without a length, an unknown branch.
     """
 
-    first_crank: Link
+    first_crank: Link = attrs.field(validator=_crank)
     """The crank at the ground's origin."""
-    second_crank: Link
+    second_crank: Link = attrs.field(validator=_crank)
     """The crank at the second pivot."""
     first_coupler: Link
     """The link on the first crank's end."""
@@ -155,9 +174,9 @@ class FiveBar(MemberLinkage):
     """The link on the second crank's end."""
     second_pivot: tuple[Carrier, Carrier] = attrs.field(default=(0.0, 0.0), converter=units.metre_pair)
     """Ground coordinates of the second crank's pivot [m]; both may share the origin."""
-    branch: int = 1
+    branch: int = attrs.field(default=1, validator=one_of_two)
     """+1 where the joint of the couplers lies to the left of the way from first to second crank end, -1 to the right."""
-    unreachable: Unreachable = attrs.field(default="error", converter=_unreachable)
+    unreachable: Unreachable = attrs.field(default="error", validator=_error_or_nan)
     """What a mechanism does at a pose where the loop cannot close: ``"error"``, or ``"nan"`` for NaN results."""
 
     def __attrs_post_init__(self) -> None:
@@ -166,7 +185,7 @@ class FiveBar(MemberLinkage):
     @property
     def members(self) -> tuple[Member, ...]:
         """Both cranks, and the couplers as a dyad."""
-        first = _grounded(self.first_crank, "FiveBar.first_crank", Point(GROUND, (0.0, 0.0)))
-        second = _grounded(self.second_crank, "FiveBar.second_crank", Point(GROUND, self.second_pivot))
+        first = attrs.evolve(self.first_crank, pivot=Point(GROUND, (0.0, 0.0)))
+        second = attrs.evolve(self.second_crank, pivot=Point(GROUND, self.second_pivot))
         ends = Point(first.name, (first.length, 0.0)), Point(second.name, (second.length, 0.0))
         return first, second, Dyad(first=self.first_coupler, last=self.second_coupler, between=ends, branch=self.branch)

@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 
 from springpoise.carriers import Carrier
 from springpoise.linkages.dyads import Assembled, Dyad, SliderDyad
-from springpoise.linkages.frames import Frame
+from springpoise.linkages.frames import GROUND, Frame, divisor
 from springpoise.linkages.link import Link
 from springpoise.linkages.protocol import AppliedForce
 
@@ -40,8 +40,9 @@ def pivot_forces(
 ) -> tuple[Force, ...]:
     """Forces in all joints, from the outermost member inwards; see `MemberLinkage.pivot_forces`.
 
-    A joint that is moved by itself or by a belt holds its link by a force and a couple, whose
-    counterpart acts on the body it stands on; its force is minus all that hangs on it. A dyad is held by forces alone, which two moments and the sum determine.
+    A joint that is moved by itself or by others holds its link by a force and a couple, whose
+    counterpart acts on the body it stands on; its force is minus all that hangs on it. A dyad is
+    held by forces alone, which two moments and the sum determine.
     """
     loads = {name: _Load() for name in frames}
     for at, force in applied:
@@ -49,7 +50,7 @@ def pivot_forces(
     # What is carried parallel to the ground hangs on its link as a force; the parallelogram takes its moment.
     found: list[tuple[Force, ...]] = []
     before: dict[str, str] = {}
-    previous = "ground"
+    previous = GROUND
     for member in members:
         if isinstance(member, Link):
             before[member.name] = previous if member.pivot is None else member.pivot.body
@@ -87,7 +88,7 @@ def _dyad(
         # a x r1 = -m1, and no force is left along the line: (r1 + f1 + f2) . u = 0
         ux, uy = loop.last.cos, loop.last.sin
         along = -((f1[0] + f2[0]) * ux + (f1[1] + f2[1]) * uy)
-        det = -ay * uy - ax * ux
+        det = divisor(-ay * uy - ax * ux)
         r1x = (-m1 * uy - ax * along) / det
         r1y = (-ay * along + m1 * ux) / det
         across = -((r1x + f1[0] + f2[0]) * nx + (r1y + f1[1] + f2[1]) * ny)
@@ -99,7 +100,7 @@ def _dyad(
         m2 = last.moment(x, y)
         # a x r1 = -m1 and b x r2 = -m2 with r2 = -(r1 + f1 + f2)
         right = m2 - (bx * (f1[1] + f2[1]) - by * (f1[0] + f2[0]))
-        det = -ay * bx + ax * by
+        det = divisor(-ay * bx + ax * by)
         r1x = (-m1 * bx - ax * right) / det
         r1y = (-ay * right - by * m1) / det
         r2x, r2y = -(r1x + f1[0] + f2[0]), -(r1y + f1[1] + f2[1])

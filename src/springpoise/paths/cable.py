@@ -14,6 +14,7 @@ from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError, InputTypeError
 from springpoise.linkages.body import Point
 from springpoise.linkages.protocol import AppliedForce, Linkage
+from springpoise.paths.drum import Drum
 from springpoise.paths.tangents import Circle, Span
 
 __all__ = ["Cable", "Disc"]
@@ -108,10 +109,10 @@ def _is_zero(value: Carrier) -> bool:
     return isinstance(value, float) and value == 0.0
 
 
-def _along(value: Any) -> tuple[Point | Disc, ...]:
+def _along(value: Any) -> tuple[Point | Disc | Drum, ...]:
     elements = tuple(value)
     for element in elements:
-        if not isinstance(element, Point | Disc):
+        if not isinstance(element, Point | Disc | Drum):
             raise InputTypeError(f"Cable.along must be Points and Discs, got {element!r}")
     return elements
 
@@ -119,6 +120,9 @@ def _along(value: Any) -> tuple[Point | Disc, ...]:
 @attrs.frozen(init=False, field_transformer=units.named_fields)
 class Cable:
     """A taut cable: a first point, discs and guide points in order, a last point.
+
+    Either end may be a `Drum` instead of a point: a disc that turns with its body, to which the
+    cable is tied.
 
     The spring sits at the first point's end, which matters for friction only. A guide point
     (eyelet) always bends the cable. A disc is left where the straight run between its neighbours
@@ -128,8 +132,8 @@ class Cable:
     Raises
     ------
     InputError, InputTypeError
-        Fewer than two ends, an end that is a disc, something that is neither point nor disc, or
-        more than eight discs between two guides.
+        Fewer than two ends, an end that is a disc, something that is neither point nor disc, a drum
+        that is no end, or more than eight discs between two guides.
 
     Examples
     --------
@@ -143,18 +147,20 @@ class Cable:
     'cw'
     """
 
-    along: tuple[Point | Disc, ...] = attrs.field(converter=_along)
-    """First point, discs and guide points in order, last point."""
+    along: tuple[Point | Disc | Drum, ...] = attrs.field(converter=_along)
+    """First point or drum, discs and guide points in order, last point or drum."""
 
-    def __init__(self, *along: Point | Disc) -> None:
+    def __init__(self, *along: Point | Disc | Drum) -> None:
         self.__attrs_init__(along)  # pyright: ignore[reportAttributeAccessIssue]
 
     def __attrs_post_init__(self) -> None:
         if len(self.along) < 2:
             raise InputError(f"Cable.along must be at least two Points, got {len(self.along)}")
         for place, end in (("first", self.along[0]), ("last", self.along[-1])):
-            if not isinstance(end, Point):
+            if isinstance(end, Disc):
                 raise InputError(f"Cable.along must begin and end with a Point, got {end!r} as its {place}")
+        if any(isinstance(element, Drum) for element in self.along[1:-1]):
+            raise InputError("Cable.along must have a Drum as its first or last only, got one between others")
         longest = max(len(piece) - 2 for piece in self._pieces())
         if longest > MOST_DISCS_BETWEEN_GUIDES:
             raise InputError(
@@ -179,7 +185,7 @@ class Cable:
         )
 
     def wraps(self, linkage: Linkage, q: Carrier) -> tuple[Carrier, ...]:
-        """For each disc, the angle over which the cable touches it [rad]; 0 where it has left it."""
+        """For each disc and drum, the angle over which the cable touches it [rad]; 0 where it has left it."""
         return tuple(
             run.span.choose(partial(run.wrap, disc))
             for run in self._runs(linkage, q)
@@ -212,30 +218,41 @@ class Cable:
             for index, element in enumerate(run.elements)
         )
 
-    def _pieces(self) -> list[tuple[Point | Disc, ...]]:
-        """The cable cut at its guide points, which it always touches."""
-        cuts = [index for index, element in enumerate(self.along) if isinstance(element, Point)]
-        return [self.along[start : end + 1] for start, end in pairwise(cuts)]
+    def _pieces(self) -> list[tuple[Point | Disc | Drum, ...]]:
+        """The cable cut at its guide points, which it always touches; a drum's tie is a point."""
+        first, last = self.along[0], self.along[-1]
+        before = (first.tie_point,) if isinstance(first, Drum) else ()
+        behind = (last.tie_point,) if isinstance(last, Drum) else ()
+        along = (*before, *self.along, *behind)
+        cuts = [index for index, element in enumerate(along) if isinstance(element, Point)]
+        return [along[start : end + 1] for start, end in pairwise(cuts)]
 
     def _runs(self, linkage: Linkage, q: Carrier) -> Iterator[_Run]:
-        for elements in self._pieces():
+        pieces = self._pieces()
+        for index, elements in enumerate(pieces):
             places = [linkage.position(_place(element), q) for element in elements]
             if any(len(place) != 2 for place in places):
                 raise InputError("Cable.along must run in the plane of a planar linkage, got Points in space")
             circles = [Circle(x, y, _radius(e), _sense_of(e)) for (x, y), e in zip(places, elements, strict=True)]
-            yield _Run(elements, Span(circles), [linkage.jacobian(_place(element), q) for element in elements])
+            ties = []
+            if index == 0 and isinstance(self.along[0], Drum):
+                ties.append((0, 1))
+            if index == len(pieces) - 1 and isinstance(self.along[-1], Drum):
+                ties.append((len(elements) - 2, len(elements) - 1))
+            span = Span(circles, ties=ties)
+            yield _Run(elements, span, [linkage.jacobian(_place(element), q) for element in elements])
 
 
-def _place(element: Point | Disc) -> Point:
-    return element.centre if isinstance(element, Disc) else element
+def _place(element: Point | Disc | Drum) -> Point:
+    return element if isinstance(element, Point) else element.centre
 
 
-def _radius(element: Point | Disc) -> Carrier:
-    return element.radius if isinstance(element, Disc) else 0.0
+def _radius(element: Point | Disc | Drum) -> Carrier:
+    return 0.0 if isinstance(element, Point) else element.radius
 
 
-def _sense_of(element: Point | Disc) -> float:
-    return element.sense if isinstance(element, Disc) else 0.0
+def _sense_of(element: Point | Disc | Drum) -> float:
+    return 0.0 if isinstance(element, Point) else element.sense
 
 
 class _Run(NamedTuple):
@@ -245,7 +262,7 @@ class _Run(NamedTuple):
     on both sides of it pulls at the centre.
     """
 
-    elements: tuple[Point | Disc, ...]
+    elements: tuple[Point | Disc | Drum, ...]
     span: Span
     jacobians: Sequence[tuple[tuple[Carrier, Carrier], ...]]
 

@@ -21,6 +21,9 @@ __all__ = ["GuideRoller", "Spool"]
 
 Array = NDArray[np.float64]
 
+ROUNDING = 1e-9
+"""A cable that leaves so little beyond the end of a line still leaves at its end [rad]."""
+
 TABLE_POSES = 1025
 """Poses at which a profile's moment radius is found; cubics between them err by far less than a nanometre."""
 
@@ -46,7 +49,7 @@ class GuideRoller:
     radius: float = attrs.field(default=0.0, converter=units.metre, validator=units.not_negative, kw_only=True)
     """Radius at which the middle of the cable runs [m]; 0 for an eyelet."""
     side: int = attrs.field(default=1, kw_only=True)
-    """+1 where cable and spool's axis lie on opposite sides of the roller's centre, -1 on the same side."""
+    """+1 where the cable runs between the spool's axis and the roller's centre, -1 on the far side of the centre."""
 
     def __attrs_post_init__(self) -> None:
         if self.side not in (1, -1):
@@ -57,9 +60,10 @@ class GuideRoller:
 class Spool:
     """A cable that winds on a drum or cam fixed to a joint's link.
 
-    The cable's take-up depends on one joint's angle: its derivative is the moment radius, the
-    distance of the cable's line from the joint's axis. Positive where the cable gets longer as
-    the joint turns counter-clockwise. Outside its angles every result is NaN.
+    The path is the cable up to where it is tied to the spool, so that it gets longer as cable winds
+    up. Its derivative by the joint's angle is the moment radius, the distance of the cable's line
+    from the joint's axis: positive where turning counter-clockwise winds cable up. Outside its
+    angles every result is NaN.
 
     Raises
     ------
@@ -77,7 +81,7 @@ class Spool:
     angles: Array = attrs.field(converter=units.radians)
     """Joint angles of the table [rad], shape (n,), n >= 2, strictly increasing."""
     moment_radii: Array = attrs.field(converter=units.metre)
-    """Moment radius at these angles [m], shape (n,)."""
+    """Moment radius at these angles [m], shape (n,); negative where turning counter-clockwise lets cable out."""
     joint: int = attrs.field(default=0, converter=_joint, kw_only=True)
     """Which joint, counted from 0."""
     zero_angle: float = attrs.field(default=0.0, converter=units.radian, kw_only=True)
@@ -88,9 +92,13 @@ class Spool:
     def __attrs_post_init__(self) -> None:
         angles = np.asarray(self.angles)
         if angles.ndim != 1 or angles.size < 2 or not np.all(np.diff(angles) > 0):
-            raise InputError(f"Spool.angles must be at least two strictly increasing angles in rad, got {self.angles!r}")
+            raise InputError(
+                f"Spool.angles must be at least two strictly increasing angles in rad, got {self.angles!r}"
+            )
         if np.shape(self.moment_radii) != angles.shape:
-            raise InputError(f"Spool.moment_radii must be of shape {angles.shape} like angles, got {np.shape(self.moment_radii)}")
+            raise InputError(
+                f"Spool.moment_radii must be of shape {angles.shape} like angles, got {np.shape(self.moment_radii)}"
+            )
         if not angles[0] <= self.zero_angle <= angles[-1]:
             raise InputError(
                 f"Spool.zero_angle must be from {angles[0]:g} to {angles[-1]:g} rad like angles, got {self.zero_angle:g}"
@@ -105,8 +113,8 @@ class Spool:
         radius
             Radius at which the middle of the cable runs [m], > 0.
         turn
-            Sense in which the cable winds up on the drum seen from its free end: with ``"ccw"`` the
-            cable gets longer as the joint turns counter-clockwise, with ``"cw"`` shorter.
+            Sense of the joint's turning that winds cable up on the drum: with ``"ccw"`` the path gets
+            longer as the joint turns counter-clockwise, with ``"cw"`` shorter.
         joint
             Which joint, counted from 0.
         turns
@@ -122,6 +130,8 @@ class Spool:
             raise InputError(f"radius must be > 0 m, got {size}")
         if turn not in ("cw", "ccw"):
             raise InputError(f"turn must be 'cw' or 'ccw', got {turn!r}")
+        if not turns > 0:
+            raise InputError(f"turns must be > 0, got {turns}")
         signed = size if turn == "ccw" else -size
         reach = 2.0 * math.pi * turns
         return cls([-reach, reach], [signed, signed], joint=joint)
@@ -157,6 +167,18 @@ class Spool:
         InputError
             Too few points, a line that is not convex (with the place), an unknown pull, or a
             range in which the cable would leave the given line or meet the roller.
+
+        Examples
+        --------
+        A round cam on a pin 5 mm off its middle, wound by a spring that pulls downwards:
+
+        >>> import numpy as np
+        >>> round_ = np.linspace(0.0, 2.0 * np.pi, 400)
+        >>> rim = np.stack([0.005 + 0.03 * np.cos(round_), 0.03 * np.sin(round_)], axis=-1)
+        >>> cam = Spool.from_profile(rim, leaves="-90 deg", pull="cw", over=("-90 deg", "90 deg"))
+        >>> from springpoise.linkages import Arm, Body
+        >>> round(cam.gradient(Arm(Body(1.0, (0.3, 0))), 0.0)[0], 9)
+        0.035
         """
         profile = _Profile(points)
         if pull not in ("cw", "ccw"):
@@ -167,11 +189,10 @@ class Spool:
         way = 1.0 if pull == "ccw" else -1.0
         angles = np.linspace(low, high, TABLE_POSES)
         if isinstance(leaves, GuideRoller):
-            radii = np.array([profile.arm_to_roller(float(q), leaves, way) for q in angles])
+            radii = profile.leaving_over(leaves, angles, way)
         else:
-            normal = units.radian(leaves, "leaves") - way * math.pi / 2
-            radii = np.array([profile.arm(normal - float(q)) for q in angles])
-        # A pull that turns the spool counter-clockwise lets the cable in, as the joint turns that way.
+            radii = profile.leaving_towards(units.radian(leaves, "leaves") - way * math.pi / 2 - angles)
+        # A pull that turns the spool counter-clockwise lets cable out as the joint turns that way.
         return cls(angles, -way * radii, joint=joint, zero_angle=float(low))
 
     @functools.cached_property
@@ -200,7 +221,7 @@ class Spool:
         return joints_of(q, linkage.joint_count)[self.joint]
 
     def length(self, linkage: Linkage, q: Carrier) -> Carrier:
-        """Length of the path [m]: ``zero_length`` and what the spool has let out; NaN outside the table."""
+        """Length of the path [m]: ``zero_length`` and what the spool has wound up; NaN outside the table."""
         return self.zero_length + (interpolate(self._angle(linkage, q), self._taken_up) - self._at_zero)
 
     def gradient(self, linkage: Linkage, q: Carrier) -> tuple[Carrier, ...]:
@@ -234,65 +255,98 @@ class _Profile:
         steps = np.hypot(*np.diff(line, axis=0).T)
         if not np.all(steps > 0):
             raise InputError(f"points must be distinct, got the same point twice at number {int(np.argmin(steps))}")
-        turn = _turning(line)
-        if not (np.all(turn > 0) or np.all(turn < 0)):
-            wrong = turn if np.sum(turn > 0) >= np.sum(turn < 0) else -turn
-            i = int(np.argmin(wrong)) + 1
-            raise InputError(f"points must be on a convex line, got a hollow at number {i}, {tuple(line[i].tolist())} m")
-        if np.all(turn < 0):
+        before, behind = np.diff(line, axis=0)[:-1], np.diff(line, axis=0)[1:]
+        turning = before[:, 0] * behind[:, 1] - before[:, 1] * behind[:, 0]
+        way = 1.0 if np.sum(turning > 0) >= np.sum(turning < 0) else -1.0
+        if not np.all(way * turning > 0):
+            raise _hollow(line, int(np.argmin(way * turning)) + 1)
+        if way < 0:
             line, steps = line[::-1], steps[::-1]
         self.along = np.concatenate([[0.0], np.cumsum(steps)])
         self.spline = CubicSpline(self.along, line)
         self.speed = self.spline.derivative()
+        self.bend = self.speed.derivative()
         tangents = self.speed(self.along)
         self.normals = np.unwrap(np.arctan2(tangents[:, 1], tangents[:, 0])) - math.pi / 2
+        if not np.all(np.diff(self.normals) > 0):  # points that scatter
+            place = int(np.argmin(np.diff(self.normals)))
+            raise _hollow(line, place if way > 0 else len(line) - 1 - place)
 
-    def _at(self, normal: float) -> float:
-        """Place along the line whose outward normal has this direction [rad]."""
-        from scipy.optimize import brentq
+    def tangents(self, normals: Array) -> tuple[Array, Array, Array]:
+        """For tangents with these outward normals: distance from the axis, way from its foot to the line, both in m.
 
+        The third says whether the line reaches that far; beyond it, the tangent turns about its end.
+        """
         first, last = self.normals[0], self.normals[-1]
-        turned = first + math.remainder(normal - first, 2 * math.pi)
-        while turned < first - 1e-9:
-            turned += 2 * math.pi
-        if not turned <= last + 1e-9:
+        turned = first + (normals - first) % (2.0 * math.pi)
+        turned = np.where(turned > first + 2.0 * math.pi - ROUNDING, turned - 2.0 * math.pi, turned)
+        reached = turned <= last + ROUNDING
+        nearer_first = turned - last > first + 2.0 * math.pi - turned
+        wanted = np.clip(np.where(reached | ~nearer_first, turned, first), first, last)
+        x, y = self.spline(self._places(wanted)).T
+        c, s = np.cos(normals), np.sin(normals)
+        return x * c + y * s, y * c - x * s, reached
+
+    def _places(self, normals: Array) -> Array:
+        """Places along the line with these normals, which are within the line's: Newton's steps, kept in brackets."""
+        piece = np.clip(np.searchsorted(self.normals, normals) - 1, 0, len(self.along) - 2)
+        low, high = self.along[piece], self.along[piece + 1]
+        place = 0.5 * (low + high)
+        for _ in range(60):
+            dx, dy = self.speed(place).T
+            ddx, ddy = self.bend(place).T
+            beyond = (np.arctan2(dy, dx) - math.pi / 2 - normals + math.pi) % (2.0 * math.pi) - math.pi
+            low, high = np.where(beyond <= 0, place, low), np.where(beyond >= 0, place, high)
+            with np.errstate(all="ignore"):
+                better = place - beyond * (dx * dx + dy * dy) / (dx * ddy - dy * ddx)
+            inside = (better >= low) & (better <= high)
+            step = np.where(inside, better, 0.5 * (low + high)) - place
+            place = place + step
+            if np.all(np.abs(step) <= 1e-15 * self.along[-1]):
+                break
+        return np.asarray(place)
+
+    def leaving_towards(self, normals: Array) -> Array:
+        """Distances of the tangents with these outward normals from the axis [m]."""
+        arms, _, reached = self.tangents(normals)
+        self._must_reach(normals, reached)
+        return arms
+
+    def leaving_over(self, roller: GuideRoller, q: Array, way: float) -> Array:
+        """The same for tangents that touch a roller, the spool being turned by ``q``: Newton's steps."""
+        away, bearing = math.hypot(*roller.at), math.atan2(roller.at[1], roller.at[0])
+        normals = np.full(q.shape, bearing - way * math.pi / 2)
+        settled = np.full(q.shape, False)
+        for _ in range(100):
+            arms, offsets, reached = self.tangents(normals - q)
+            reach = (arms + roller.side * roller.radius) / away
+            run = away * np.sqrt(np.maximum(1.0 - reach * reach, 1e-12))
+            beyond = normals - (bearing - way * np.arccos(np.clip(reach, -1.0, 1.0)))
+            straight = run - way * offsets
+            if np.all(settled):
+                break
+            # The slope is straight/run; where it is slight or wrong, far from the solution, a plain step is safer.
+            normals = normals - beyond / np.where(straight > 0.2 * run, straight / run, 1.0)
+            settled = np.abs(beyond) < 1e-13
+        fine = settled & (np.abs(reach) < 1.0) & (straight > 0.0)
+        if not np.all(fine):
+            place = int(np.argmin(fine))
             raise InputError(
-                f"points must reach to where the cable leaves, got normals from {first:.4f} to {last:.4f} rad, needed {turned:.4f}"
+                f"leaves must be a roller that the cable reaches from the spool, got one at {away:g} m with an arm of "
+                f"{arms[place]:g} m at {q[place]:.4f} rad"
+            )
+        self._must_reach(normals - q, reached)
+        return arms
+
+    def _must_reach(self, normals: Array, reached: Array) -> None:
+        if not np.all(reached):
+            first, last = self.normals[0], self.normals[-1]
+            raise InputError(
+                f"points must reach to where the cable leaves, got normals from {first:.4f} to {last:.4f} rad, "
+                f"needed {normals[int(np.argmin(reached))]:.4f}"
             )
 
-        def error(place: float) -> float:
-            x, y = self.speed(place)
-            return math.remainder(math.atan2(y, x) - math.pi / 2 - turned, 2 * math.pi)
 
-        piece = int(np.clip(np.searchsorted(self.normals, turned) - 1, 0, len(self.along) - 2))
-        low, high = self.along[piece], self.along[piece + 1]
-        if error(low) >= 0:
-            return float(low)
-        if error(high) <= 0:
-            return float(high)
-        return float(brentq(error, low, high, xtol=1e-15))
-
-    def arm(self, normal: float) -> float:
-        """Distance of the tangent with this outward normal from the axis [m]."""
-        x, y = self.spline(self._at(normal))
-        return float(x * math.cos(normal) + y * math.sin(normal))
-
-    def arm_to_roller(self, q: float, roller: GuideRoller, way: float) -> float:
-        """The same for the tangent that touches the roller, the spool being turned by ``q``."""
-        away, bearing = math.hypot(*roller.at), math.atan2(roller.at[1], roller.at[0])
-        normal = bearing - way * math.pi / 2
-        for _ in range(60):
-            arm = self.arm(normal - q)
-            reach = (arm + roller.side * roller.radius) / away
-            if not abs(reach) < 1:
-                raise InputError(f"leaves must lie outside the spool, got a roller at {away:g} m with an arm of {arm:g} m")
-            step = bearing - way * math.acos(reach) - normal
-            normal += step
-            if abs(step) < 1e-14:
-                break
-        return self.arm(normal - q)
-
-
-def _turning(line: Array) -> Array:
-    before, behind = np.diff(line, axis=0)[:-1], np.diff(line, axis=0)[1:]
-    return np.asarray(before[:, 0] * behind[:, 1] - before[:, 1] * behind[:, 0])
+def _hollow(line: Array, number: int) -> InputError:
+    x, y = line[number].tolist()
+    return InputError(f"points must be on a convex line, got a hollow at number {number}, ({x:g}, {y:g}) m")

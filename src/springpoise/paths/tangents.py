@@ -36,6 +36,11 @@ class Circle(NamedTuple):
         """Radius with the sign of the sense."""
         return self.sense * self.radius
 
+    def tied_at(self, x: Carrier, y: Carrier) -> Tangent:
+        """The run of no length at a point of the rim, in the direction in which the cable lies there."""
+        scale = self.sense / self.radius
+        return Tangent(x, y, scale * (self.y - y), scale * (x - self.x), 0.0 * x, True)
+
 
 class Tangent(NamedTuple):
     """A straight run between two circles."""
@@ -69,9 +74,15 @@ class Span:
     circle that it touches and clears each that it skips.
     """
 
-    def __init__(self, circles: Sequence[Circle]) -> None:
+    def __init__(self, circles: Sequence[Circle], *, ties: Sequence[tuple[int, int]] = ()) -> None:
+        """``ties``: neighbours of which one is a point on the rim of the other."""
         self.circles = tuple(circles)
         self._tangents: dict[tuple[int, int], Tangent] = {}
+        for i, j in ties:
+            drum, end = (
+                (self.circles[i], self.circles[j]) if self.circles[i].sense else (self.circles[j], self.circles[i])
+            )
+            self._tangents[i, j] = drum.tied_at(end.x, end.y)
         self._lifted: dict[tuple[int, int, int], Carrier] = {}
 
     def tangent(self, i: int, j: int) -> Tangent:

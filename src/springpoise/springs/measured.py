@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import functools
+import os
 from typing import Any
 
 import attrs
@@ -11,7 +12,8 @@ from numpy.typing import NDArray
 
 from springpoise import units
 from springpoise.carriers import Carrier, interpolate
-from springpoise.errors import InputError
+from springpoise.columns import Column, heading_names, read_columns
+from springpoise.errors import InputError, PoiseFileError
 from springpoise.lookup import Lookup
 from springpoise.springs.service import remaining, warmed
 from springpoise.units import ScalarLike
@@ -20,6 +22,9 @@ __all__ = ["MeasuredSpring"]
 
 Array = NDArray[np.float64]
 
+_BENCHES = {("length", "load"): ("m", "N"), ("angle", "torque"): ("rad", "N*m")}
+"""The two pairs of columns that a file of readings may have, and their SI units."""
+
 
 @attrs.frozen(field_transformer=units.named_fields)
 class MeasuredSpring:
@@ -27,7 +32,7 @@ class MeasuredSpring:
 
     Between the readings the load follows a shape-preserving cubic (no overshoot between two
     readings), whose energy is exact. Outside the readings every result is NaN: a measured spring
-    is never extrapolated. With both branches ``load`` is their middle and ``hysteresis`` half
+    is never extrapolated. Readings in a file are taken with :meth:`read`. With both branches ``load`` is their middle and ``hysteresis`` half
     their distance. Give lengths in m and loads in N; a torsion spring's angles in rad and torques
     in N·m serve as well, as plain numbers.
 
@@ -80,6 +85,54 @@ class MeasuredSpring:
                     f"MeasuredSpring.unloading must not exceed loads, got {self.unloading[i]:g} over {self.loads[i]:g} N "
                     f"at {lengths[i]:g} m; are the branches swapped?"
                 )
+
+    @classmethod
+    def read(cls, file: str | os.PathLike[str]) -> MeasuredSpring:
+        """The spring whose readings are in a CSV file.
+
+        The heading line names the columns, in any order, with units in brackets: ``length [mm]``
+        and ``load [N]``, or for a torsion spring ``angle [deg]`` and ``torque [N*m]``; and where
+        the other branch was read too ``unloading`` in the unit of a load or torque. Rows stand in
+        order of increasing length. Other columns are passed over, and so are empty lines and lines
+        that begin with ``#``.
+
+        Parameters
+        ----------
+        file
+            Path of a CSV file in UTF-8, comma or semicolon separated.
+
+        Raises
+        ------
+        PoiseFileError
+            The file cannot be read, a column is missing, doubled or without its unit, a cell is no
+            number, or the readings make no spring; the message names the file and what was found.
+
+        Examples
+        --------
+        >>> from pathlib import Path
+        >>> from tempfile import mkdtemp
+        >>> file = Path(mkdtemp()) / "bench.csv"
+        >>> _ = file.write_text("length [mm], load [N], unloading [N]\\n100, 12, 11\\n150, 30, 28\\n200, 50, 50\\n")
+        >>> spring = MeasuredSpring.read(file)
+        >>> round(spring.load(0.15), 9), round(spring.hysteresis(0.15), 9)
+        (29.0, 1.0)
+        """
+        called = "a spring's readings"
+        names = heading_names(file, called)
+        angular = "angle" in names or "torque" in names
+        pair = ("angle", "torque") if angular else ("length", "load")
+        unit, load_unit = _BENCHES[pair]
+        table = read_columns(
+            file,
+            needed={pair[0]: Column(unit), pair[1]: Column(load_unit)},
+            optional={"unloading": Column(load_unit)},
+            called=called,
+            row="reading",
+        )
+        try:
+            return cls(table.numbers[pair[0]], table.numbers[pair[1]], unloading=table.numbers.get("unloading"))
+        except InputError as error:
+            raise PoiseFileError(f"{table.path}: {error}") from error
 
     @functools.cached_property
     def _curve(self) -> Lookup:

@@ -205,7 +205,7 @@ def test_the_report_as_text_and_as_json(document: guard.PoiseFile) -> None:
     assert data["verdicts"][1]["value_Nm"] == pytest.approx(CRATE + 0.2)
     assert data["verdicts"][1]["payload"] == "crate"
     assert set(data["verdicts"][0]) == {
-        "what", "holds", "value_Nm", "allowed_Nm", "margin_Nm", "at_rad", "payload", "about", "sentence"
+        "what", "holds", "value_Nm", "allowed_Nm", "margin_Nm", "at_rad", "payload", "temperature_K", "about", "sentence"
     }  # fmt: skip
     text = str(report)
     assert "FAILS" in text

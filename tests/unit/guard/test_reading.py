@@ -157,7 +157,7 @@ RATE = 'rate = "0.245 N/mm" # bought'
         ("count = 2", "count = 2.0", "springs[1].count: must be a whole number, got 2.0"),
         ("count = 2", "count = 0", "springs[1].count: SpringMount.count must be a whole number >= 1, got 0"),
         ("count = 2", "count = true", "springs[1].count: must be a whole number, got the flag True"),
-        ('com = ["0.4 m", "0 m"]', 'com = ["0.4 m"]', "arm.bodies[1].com: must be a list of 2 values, got 1"),
+        ('com = ["0.4 m", "0 m"]', 'com = ["0.4 m"]', "arm.bodies[1].com: Body.com must be a pair or three values in m, got 1 values"),
         ('com = ["0.4 m", "0 m"]', 'com = "0.4 m"', "arm.bodies[1].com: must be a list, got the text '0.4 m'"),
         ('com = ["0.4 m", "0 m"]', 'com = ["0.4 m", 0]', "arm.bodies[1].com[2]: must be a text with a unit"),
         ('com = ["0.4 m", "0 m"]', "com = 1979-05-27", "arm.bodies[1].com: must be a list, got datetime.date(1979, 5, 27)"),

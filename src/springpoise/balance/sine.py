@@ -15,7 +15,7 @@ from typing import Any
 import attrs
 
 from springpoise import units
-from springpoise.balance.residual import Residual, residual
+from springpoise.balance.residuals import Residual, residual
 from springpoise.errors import InputError, InputTypeError
 from springpoise.linkages import Arm, Point
 from springpoise.mechanism import Mechanism, SpringMount
