@@ -204,9 +204,13 @@ class Feedforward:
             if output == "voltage":
                 velocity = values[joints] if joints == 1 else tuple(values[joints : 2 * joints])
                 return self.voltage(q, velocity=velocity, moving=way or None, gravity=gravity)
-            if output == "current":
-                return self.current(q, moving=way, gravity=gravity)
-            return self.torque(q, moving=way, gravity=gravity)
+            result = (
+                self.current(q, moving=way, gravity=gravity)
+                if output == "current"
+                else self.torque(q, moving=way, gravity=gravity)
+            )
+            # Torques that depend on no joint come as numbers in an array.
+            return tuple(result.tolist()) if isinstance(result, np.ndarray) else result
 
         return record(formula, inputs=tuple(inputs))
 

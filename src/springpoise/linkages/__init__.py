@@ -26,6 +26,9 @@ if TYPE_CHECKING:
     from springpoise.linkages.protocol import PointMass as PointMass
     from springpoise.linkages.spatial_chain import SpatialChain as SpatialChain
     from springpoise.linkages.spatial_chain import SpatialLink as SpatialLink
+    from springpoise.linkages.urdf import UrdfFinding as UrdfFinding
+    from springpoise.linkages.urdf import UrdfModel as UrdfModel
+    from springpoise.linkages.urdf import from_urdf as from_urdf
 
 __all__ = [
     "AppliedForce",
@@ -44,6 +47,9 @@ __all__ = [
     "SliderDyad",
     "SpatialChain",
     "SpatialLink",
+    "UrdfFinding",
+    "UrdfModel",
+    "from_urdf",
 ]
 
 _HOME = {
@@ -63,6 +69,9 @@ _HOME = {
     "SliderDyad": "dyads",
     "SpatialChain": "spatial_chain",
     "SpatialLink": "spatial_chain",
+    "UrdfFinding": "urdf",
+    "UrdfModel": "urdf",
+    "from_urdf": "urdf",
 }
 
 if not TYPE_CHECKING:  # otherwise type checkers would accept every misspelt name

@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from typing import Any, TypeAlias
 
 import attrs
+import numpy as np
 
 from springpoise.carriers import Carrier, joints_of, namespace
 from springpoise.errors import InputError
@@ -14,7 +15,9 @@ from springpoise.linkages.body import Body, Point
 from springpoise.linkages.dyads import Assembled, Dyad, SliderDyad
 from springpoise.linkages.frames import GROUND, Frame, still
 from springpoise.linkages.link import Link
+from springpoise.linkages.posed import Posed
 from springpoise.linkages.protocol import AppliedForce, PointMass
+from springpoise.linkages.statics import pivot_forces
 
 __all__ = ["Member", "MemberLinkage"]
 
@@ -122,10 +125,12 @@ class MemberLinkage:
     def missing(self, q: Carrier) -> Carrier:
         """Length by which the worst loop fails to close [m]: not positive where all close, -inf without loops."""
         worst: Carrier = -math.inf
-        for loop in self._standing(q)[1].values():
-            # A loop on one that does not close is nowhere, and lacks NaN.
-            xp = namespace(worst, loop.missing)
-            worst = xp.where(loop.missing > worst, loop.missing, worst)
+        for loop in self.standing(q)[1].values():
+            # A loop on one that does not close is nowhere and lacks NaN, which must not hide what the other lacks.
+            lacking = loop.missing
+            xp = namespace(worst, lacking)
+            kept = xp.where(worst > 0.0, worst, worst + 0.0 * lacking)
+            worst = xp.where(lacking > worst, lacking, kept)
         return worst
 
     def dead_point_margin(self, q: Carrier) -> Carrier:
@@ -135,7 +140,7 @@ class MemberLinkage:
         does not close.
         """
         least: Carrier = 1.0
-        for loop in self._standing(q)[1].values():
+        for loop in self.standing(q)[1].values():
             spread = namespace(loop.spread).abs(loop.spread)
             least = namespace(least, spread).minimum(least, spread)
         return least
@@ -146,9 +151,7 @@ class MemberLinkage:
         For a dyad: the forces on its first link by the earlier body and by the last link, and on
         its last link by the other earlier body. Drives act as couples and add nothing.
         """
-        from springpoise.linkages.statics import pivot_forces
-
-        frames, loops = self._standing(q)
+        frames, loops = self.standing(q)
         return pivot_forces(self.members, frames, loops, applied)
 
     def _check(self) -> None:
@@ -187,14 +190,29 @@ class MemberLinkage:
                         raise InputError(f"Body.com must be (x, y) in m on a {owner}, got {body.com} on {link.name!r}")
                 known |= {link.name} if link.carried is None else {link.name, link.carried_name}
 
-    def _frame(self, point: Point, q: Carrier) -> Frame:
+    def posed(self, q: Carrier) -> Posed:
+        """The linkage for many questions at this very ``q``: its bodies are placed once, not for each point."""
+        return Posed(self, q)
+
+    def named(self, point: Point) -> str:
+        """Name of the body that a point is fixed in.
+
+        Raises
+        ------
+        InputError
+            The linkage has no such body, or the point is one of space.
+        """
         if point.body not in self.frames:
             raise InputError(f"Point.body must be one of {', '.join(map(repr, self.frames))}, got {point.body!r}")
         if len(point.at) != 2:
             raise InputError(f"Point.at must be (x, y) in m on a {type(self).__name__}, got {point.at}")
-        return self._standing(q, until=point.body)[0][point.body]
+        return point.body
 
-    def _standing(self, q: Carrier, until: str | None = None) -> tuple[dict[str, Frame], dict[str, Assembled]]:
+    def _frame(self, point: Point, q: Carrier) -> Frame:
+        body = self.named(point)
+        return self.standing(q, until=body)[0][body]
+
+    def standing(self, q: Carrier, until: str | None = None) -> tuple[dict[str, Frame], dict[str, Assembled]]:
         """Frames by name and loops by the name of their first link, as far as a body."""
         driven = dict(zip(self.joint_names, self._joints(q), strict=True))
         frames, loops = {GROUND: still(self.joint_count)}, {}
@@ -223,6 +241,8 @@ class MemberLinkage:
                 raise InputError(
                     f"q must be of shape (..., {count}) or {count} components for {count} joints, got {q!r}"
                 )
+            if isinstance(q, np.ndarray) and q.ndim == 1:
+                return tuple(q.tolist())  # floats, not NumPy's scalars, which are neither floats nor arrays
         return joints_of(q, count)
 
     def _changed(self, change: Any) -> Any:

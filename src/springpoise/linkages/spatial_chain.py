@@ -320,7 +320,8 @@ class SpatialChain:
             if index in parents:
                 pulls[index] = pull if turn is None else times(transposed(turn), pull)
         moments = [link.moment for link in moving]
-        totals: list[Carrier] = [0.0] * self.joint_count
+        # Of the kind and shape of q, also where nothing varies, as on slides at right angles.
+        totals: list[Carrier] = [0.0 * travel for travel in joints_of(q, self.joint_count)]
         for index in reversed(range(len(moving))):
             link, turn, pull = moving[index], turns[index], at_zero[index]
             moment = moments[index] if turn is None else times(turn, moments[index])
