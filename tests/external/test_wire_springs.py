@@ -19,11 +19,6 @@ import attrs
 import numpy as np
 import pytest
 
-from springpoise.springs.wire import buckling, fatigue, stress_factors
-from springpoise.springs.wire.coil_sizing import index_for_load
-from springpoise.springs.wire.compression_coil import CompressionCoil
-from springpoise.springs.wire.extension_coil import ExtensionCoil
-from springpoise.springs.wire.initial_tension import usual_stress, zone_of
 from springpoise.springs.materials import (
     CHROME_SILICON,
     CHROME_VANADIUM,
@@ -38,8 +33,13 @@ from springpoise.springs.materials import (
     StrengthSegment,
     WireMaterial,
 )
-from springpoise.springs.wire.torsion_coil import TorsionCoil
 from springpoise.springs.warnings import BucklingWarning, SpringIndexWarning
+from springpoise.springs.wire import buckling, fatigue, stress_factors
+from springpoise.springs.wire.coil_sizing import index_for_load
+from springpoise.springs.wire.compression_coil import CompressionCoil
+from springpoise.springs.wire.extension_coil import ExtensionCoil
+from springpoise.springs.wire.initial_tension import usual_stress, zone_of
+from springpoise.springs.wire.torsion_coil import TorsionCoil
 
 PSI = 6894.757293168
 LBF = 4.4482216152605

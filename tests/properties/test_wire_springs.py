@@ -13,12 +13,12 @@ from hypothesis import assume, given
 from hypothesis import strategies as st
 from scipy.integrate import quad
 
+from springpoise.springs.materials import HARD_DRAWN, MUSIC_WIRE, OIL_TEMPERED, STAINLESS_302, WireMaterial
 from springpoise.springs.wire import buckling, stress_factors
 from springpoise.springs.wire.coil_sizing import index_for_load
 from springpoise.springs.wire.compression_coil import CompressionCoil
 from springpoise.springs.wire.extension_coil import ExtensionCoil
 from springpoise.springs.wire.fatigue import CRITERIA, fatigue_factor, greatest_load
-from springpoise.springs.materials import HARD_DRAWN, MUSIC_WIRE, OIL_TEMPERED, STAINLESS_302, WireMaterial
 from springpoise.springs.wire.torsion_coil import TorsionCoil
 from springpoise.tape import derivative_of, record
 

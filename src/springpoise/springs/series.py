@@ -10,6 +10,7 @@ from __future__ import annotations
 import functools
 import math
 from collections.abc import Sequence
+from itertools import pairwise
 from typing import Any, NamedTuple
 
 import attrs
@@ -265,7 +266,7 @@ def _refined(loads: Sequence[float], total: Any, slopes: Sequence[Any]) -> Looku
     slope = slopes[0]
     size = max(abs(loads[0]), abs(loads[-1]))
     pieces: list[tuple[float, list[float]]] = []
-    todo = [(a, b) for a, b in zip(loads[:-1], loads[1:], strict=True)][::-1]
+    todo = list(pairwise(loads))[::-1]
     end = total(loads[-1])
     while todo:
         a, b = todo.pop()

@@ -49,6 +49,7 @@ class Dual(Recorded):
 
     @property
     def rank(self) -> int:
+        """Which of two kinds in one operation says how it is done: the higher."""
         return 1 + self.level
 
     @property

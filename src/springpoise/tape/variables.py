@@ -131,6 +131,7 @@ class Variable(Recorded):
 
     @property
     def rank(self) -> int:
+        """Which of two kinds in one operation says how it is done: the higher."""
         return 0
 
     @property

@@ -8,10 +8,10 @@ import numpy as np
 import pytest
 
 from springpoise.errors import InputError, InputTypeError
-from springpoise.springs.wire.compression_coil import CompressionCoil
-from springpoise.springs.wire.fatigue import ZIMMERLI_PEENED, Fatigue
 from springpoise.springs.materials import EN_SM, MUSIC_WIRE, Relaxation
 from springpoise.springs.warnings import BucklingWarning, CoilCountWarning
+from springpoise.springs.wire.compression_coil import CompressionCoil
+from springpoise.springs.wire.fatigue import ZIMMERLI_PEENED, Fatigue
 
 
 def coil(**changes: Any) -> CompressionCoil:

@@ -8,10 +8,10 @@ import numpy as np
 import pytest
 
 from springpoise.errors import InputError, InputTypeError, UnitError
-from springpoise.springs.wire.extension_coil import ExtensionCoil
-from springpoise.springs.wire.fatigue import ZIMMERLI_PEENED, Fatigue
 from springpoise.springs.materials import EN_SM, MUSIC_WIRE, PHOSPHOR_BRONZE, Relaxation
 from springpoise.springs.warnings import SpringIndexWarning, TemperatureWarning
+from springpoise.springs.wire.extension_coil import ExtensionCoil
+from springpoise.springs.wire.fatigue import ZIMMERLI_PEENED, Fatigue
 
 
 def coil(**changes: Any) -> ExtensionCoil:

@@ -10,8 +10,8 @@ import pytest
 
 from springpoise import Arm, Body, Mechanism, Point, SpringMount, Straight
 from springpoise.errors import InputError, InputTypeError, UnitError
-from springpoise.springs.gas.spring import GasSpring
 from springpoise.springs.gas.mounting import check_gas_mounting, rod_down_margin
+from springpoise.springs.gas.spring import GasSpring
 from springpoise.springs.gas.state import NITROGEN, IdealGas, PengRobinson, VanDerWaals
 from springpoise.springs.warnings import GasPressureWarning, GasProgressionWarning, GasTemperatureWarning, RodUpWarning
 

@@ -9,8 +9,8 @@ import pytest
 from springpoise.errors import InputError
 from springpoise.springs import TorsionSpring
 from springpoise.springs.materials import HARD_DRAWN, MUSIC_WIRE
-from springpoise.springs.wire.torsion_coil import TorsionCoil
 from springpoise.springs.warnings import CoilCountWarning
+from springpoise.springs.wire.torsion_coil import TorsionCoil
 
 
 def coil(**changes: Any) -> TorsionCoil:

@@ -12,10 +12,10 @@ import numpy as np
 from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError
-from springpoise.springs.wire.stress_factors import shear_per_load, torsion_factor
 from springpoise.springs.warnings import SpringIndexWarning, TemperatureWarning
 from springpoise.springs.wire.material import WireMaterial, as_material
 from springpoise.springs.wire.strength import EDGE, happens
+from springpoise.springs.wire.stress_factors import shear_per_load, torsion_factor
 from springpoise.units import ScalarLike
 
 __all__ = ["Coil", "HelicalCoil"]

@@ -10,8 +10,8 @@ import attrs
 from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError, InputTypeError
-from springpoise.springs.wire.margins import Margin, limited, shown
 from springpoise.springs.wire.fatigue import Fatigue, fatigue_factor, greatest_load
+from springpoise.springs.wire.margins import Margin, limited, shown
 from springpoise.springs.wire.material import WireMaterial
 from springpoise.springs.wire.strength import happens
 

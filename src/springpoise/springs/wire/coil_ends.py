@@ -11,8 +11,8 @@ from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError
 from springpoise.springs.wire.coil_body import HelicalCoil
-from springpoise.springs.wire.stress_factors import bergstraesser, shear_per_load
 from springpoise.springs.wire.strength import happens
+from springpoise.springs.wire.stress_factors import bergstraesser, shear_per_load
 from springpoise.tables import facts
 from springpoise.units import ScalarLike
 

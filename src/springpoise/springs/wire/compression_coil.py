@@ -9,12 +9,12 @@ import attrs
 from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError
+from springpoise.springs.compression import CompressionSpring
+from springpoise.springs.service import ROOM_TEMPERATURE
 from springpoise.springs.wire.buckling import GUIDED, alpha_of, critical_shortening, end_condition, stable_length
 from springpoise.springs.wire.coil_body import at_least, helical_rate
 from springpoise.springs.wire.coil_checks import clash_share, least_limit, lowest_of_cycle, positive_number
 from springpoise.springs.wire.coil_ends import ENDS, EndedCoil, ends_named
-from springpoise.springs.wire.margins import CoilMargins
-from springpoise.springs.compression import CompressionSpring
 from springpoise.springs.wire.compression_margins import (
     CLASH_ALLOWANCE,
     all_limits,
@@ -24,10 +24,10 @@ from springpoise.springs.wire.compression_margins import (
 )
 from springpoise.springs.wire.compression_sizing import compression_from_load
 from springpoise.springs.wire.fatigue import Fatigue, as_fatigue
-from springpoise.springs.service import ROOM_TEMPERATURE
-from springpoise.springs.wire.stress_factors import shear_per_load
+from springpoise.springs.wire.margins import CoilMargins
 from springpoise.springs.wire.material import WireMaterial
 from springpoise.springs.wire.strength import happens
+from springpoise.springs.wire.stress_factors import shear_per_load
 from springpoise.units import ScalarLike
 
 __all__ = ["CompressionCoil"]

@@ -10,6 +10,7 @@ import numpy as np
 from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError
+from springpoise.springs.warnings import BucklingWarning, CoilCountWarning
 from springpoise.springs.wire.buckling import GUIDED
 from springpoise.springs.wire.coil_body import SURGE_RATIO
 from springpoise.springs.wire.coil_checks import (
@@ -22,11 +23,10 @@ from springpoise.springs.wire.coil_checks import (
     least_limit,
     static_basis,
 )
-from springpoise.springs.wire.margins import CoilMargins, limited, shown
 from springpoise.springs.wire.fatigue import ZIMMERLI_PEENED, Fatigue, endurance
-from springpoise.springs.wire.stress_factors import bergstraesser, shear_per_load, torsion_factor
-from springpoise.springs.warnings import BucklingWarning, CoilCountWarning
+from springpoise.springs.wire.margins import CoilMargins, limited, shown
 from springpoise.springs.wire.strength import happens
+from springpoise.springs.wire.stress_factors import bergstraesser, shear_per_load, torsion_factor
 
 if TYPE_CHECKING:
     from springpoise.springs.wire.compression_coil import CompressionCoil

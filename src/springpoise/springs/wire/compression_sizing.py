@@ -9,8 +9,8 @@ from springpoise.errors import InputError
 from springpoise.springs.wire.coil_checks import clash_share, single_positive
 from springpoise.springs.wire.coil_sizing import index_for_load, smallest_wire
 from springpoise.springs.wire.fatigue import Fatigue, endurance, fatigue_factor
-from springpoise.springs.wire.stress_factors import bergstraesser, shear_per_load
 from springpoise.springs.wire.material import WireMaterial
+from springpoise.springs.wire.stress_factors import bergstraesser, shear_per_load
 
 __all__ = ["compression_from_load"]
 

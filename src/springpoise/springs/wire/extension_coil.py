@@ -10,18 +10,18 @@ import attrs
 from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError
+from springpoise.springs.extension import ExtensionSpring
+from springpoise.springs.service import ROOM_TEMPERATURE
 from springpoise.springs.wire.coil_body import at_least, helical_rate
 from springpoise.springs.wire.coil_checks import least_limit, lowest_of_cycle, positive_number
-from springpoise.springs.wire.margins import CoilMargins
 from springpoise.springs.wire.coil_sizing import extension_from_load
-from springpoise.springs.extension import ExtensionSpring
 from springpoise.springs.wire.extension_margins import all_limits, extension_margins
 from springpoise.springs.wire.fatigue import Fatigue, as_fatigue
 from springpoise.springs.wire.initial_tension import WoundTension
-from springpoise.springs.service import ROOM_TEMPERATURE
-from springpoise.springs.wire.stress_factors import shear_per_load
+from springpoise.springs.wire.margins import CoilMargins
 from springpoise.springs.wire.material import WireMaterial
 from springpoise.springs.wire.strength import EDGE, happens
+from springpoise.springs.wire.stress_factors import shear_per_load
 from springpoise.units import ScalarLike
 
 __all__ = ["ExtensionCoil"]

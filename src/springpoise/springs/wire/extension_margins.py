@@ -18,9 +18,10 @@ from springpoise.springs.wire.coil_checks import (
     least_limit,
     static_basis,
 )
-from springpoise.springs.wire.margins import CoilMargins, Margin, limited, shown
 from springpoise.springs.wire.fatigue import SHEAR_OVER_BENDING, Fatigue, endurance
 from springpoise.springs.wire.initial_tension import ZONES, usual_stress
+from springpoise.springs.wire.margins import CoilMargins, Margin, limited, shown
+from springpoise.springs.wire.material import WireMaterial
 from springpoise.springs.wire.stress_factors import (
     bergstraesser,
     hook_bending,
@@ -28,7 +29,6 @@ from springpoise.springs.wire.stress_factors import (
     shear_per_load,
     torsion_factor,
 )
-from springpoise.springs.wire.material import WireMaterial
 
 if TYPE_CHECKING:
     from springpoise.springs.wire.extension_coil import ExtensionCoil

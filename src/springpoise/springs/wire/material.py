@@ -11,8 +11,8 @@ from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError, InputTypeError
 from springpoise.springs.service import ROOM_TEMPERATURE
-from springpoise.springs.wire.stress_factors import TORSION_FACTORS
 from springpoise.springs.wire.strength import DiameterSteps, StrengthSet, as_steps, as_strength
+from springpoise.springs.wire.stress_factors import TORSION_FACTORS
 from springpoise.units import ScalarLike
 
 __all__ = ["Allowable", "CyclicLimits", "Relaxation", "WireMaterial"]

@@ -10,17 +10,17 @@ import attrs
 from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError, InputTypeError
+from springpoise.springs.service import ROOM_TEMPERATURE
+from springpoise.springs.torsion import TorsionSpring
 from springpoise.springs.wire.coil_body import at_least
 from springpoise.springs.wire.coil_checks import least_limit, lowest_of_cycle, positive_number, single_positive
-from springpoise.springs.wire.margins import CoilMargins
 from springpoise.springs.wire.coil_sizing import smallest_wire
-from springpoise.springs.service import ROOM_TEMPERATURE
-from springpoise.springs.wire.stress_factors import bending_inner, bending_outer, bending_per_moment
-from springpoise.springs.torsion import TorsionSpring
-from springpoise.springs.wire.torsion_margins import all_limits, torsion_margins, warn_of_turns
-from springpoise.springs.wire.winding import AVERAGED, THEORETICAL, TURN, WindingCoil
+from springpoise.springs.wire.margins import CoilMargins
 from springpoise.springs.wire.material import WireMaterial
 from springpoise.springs.wire.strength import happens
+from springpoise.springs.wire.stress_factors import bending_inner, bending_outer, bending_per_moment
+from springpoise.springs.wire.torsion_margins import all_limits, torsion_margins, warn_of_turns
+from springpoise.springs.wire.winding import AVERAGED, THEORETICAL, TURN, WindingCoil
 from springpoise.units import ScalarLike
 
 __all__ = ["TorsionCoil"]

@@ -11,13 +11,13 @@ import numpy as np
 from springpoise import units
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError
-from springpoise.springs.wire.coil_checks import Check, FatigueCheck, StaticCheck, cycle_of, least_limit, static_basis
-from springpoise.springs.wire.margins import CoilMargins, limited, shown
-from springpoise.springs.wire.fatigue import repeated_bending_limit
-from springpoise.springs.wire.stress_factors import bending_inner, bending_per_moment
 from springpoise.springs.warnings import CoilCountWarning
+from springpoise.springs.wire.coil_checks import Check, FatigueCheck, StaticCheck, cycle_of, least_limit, static_basis
+from springpoise.springs.wire.fatigue import repeated_bending_limit
+from springpoise.springs.wire.margins import CoilMargins, limited, shown
 from springpoise.springs.wire.material import WireMaterial
 from springpoise.springs.wire.strength import happens
+from springpoise.springs.wire.stress_factors import bending_inner, bending_per_moment
 
 if TYPE_CHECKING:
     from springpoise.springs.wire.torsion_coil import TorsionCoil
