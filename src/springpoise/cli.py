@@ -8,7 +8,8 @@ import json
 import os
 import sys
 import traceback
-from collections.abc import Sequence
+import warnings
+from collections.abc import Iterator, Sequence
 from pathlib import Path
 from typing import Any, NamedTuple, NoReturn
 
@@ -74,7 +75,8 @@ def main(argv: Sequence[str] | None = None) -> int:
             stream.reconfigure(errors="replace")  # type: ignore[union-attr]
     arguments = _parser().parse_args(argv)
     try:
-        answer: _Answer = arguments.run(arguments)
+        with _warnings_told():
+            answer: _Answer = arguments.run(arguments)
     except KeyboardInterrupt:
         answer = _refusal("interrupted", INTERRUPTED)
     except Exception as error:  # a person gets a message, never a traceback
@@ -188,6 +190,24 @@ def _told(answer: _Answer, *, as_json: bool) -> int:
         with contextlib.suppress(OSError, ValueError):
             os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
     return answer.code
+
+
+@contextlib.contextmanager
+def _warnings_told() -> Iterator[None]:
+    """What springs warn of while a file is read, in words and not with a line of code; each once."""
+    from springpoise.springs import SpringWarning
+
+    with warnings.catch_warnings(record=True) as caught:
+        warnings.simplefilter("always", SpringWarning)
+        try:
+            yield
+        finally:
+            springs = [one for one in caught if issubclass(one.category, SpringWarning)]
+            others = [one for one in caught if one not in springs]
+    for text in dict.fromkeys(str(one.message) for one in springs):
+        print(_printable(f"springpoise: warning: {text}"), file=sys.stderr)
+    for one in others:
+        warnings.warn_explicit(one.message, one.category, one.filename, one.lineno)
 
 
 def _printable(text: str) -> str:

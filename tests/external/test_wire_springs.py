@@ -491,7 +491,7 @@ class TestMaterials:
     def test_the_inch_column_repeats_the_metric_one(self, wire: WireMaterial) -> None:
         inch = wire.with_strength(HANDBOOK_1987_INCH).strength.segments
         for one, other in zip(wire.strength.segments, inch, strict=True):
-            assert other.at_1_mm == pytest.approx(one.at_1_mm, rel=2.1e-3)
+            assert other.at_unit_diameter == pytest.approx(one.at_unit_diameter, rel=2.1e-3)
 
     @pytest.mark.parametrize(
         ("wire", "diameter", "printed"),

@@ -4,11 +4,12 @@ from __future__ import annotations
 
 import itertools
 import math
+from typing import Any
 
 import attrs
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 from scipy.integrate import quad
 
@@ -109,9 +110,16 @@ def test_stiffness_is_the_slope_of_the_load_and_load_that_of_the_energy(tube: Ru
     assert derivative_of(tube.energy, x)[1] == pytest.approx(tube.load(x), rel=1e-8, abs=1e-9 * scale)
 
 
+def kinks(law: Any) -> list[float]:
+    """Stretches at which a law's slope jumps, so that rounding alone decides which side a carrier takes."""
+    found = [law.to_stretch] if hasattr(law, "to_stretch") else []
+    return found + (kinks(law.law) if hasattr(law, "law") else [])
+
+
 @given(tubes(), st.lists(stretches, min_size=1, max_size=5))
 @settings(max_examples=50)
 def test_every_carrier_gives_the_same(tube: RubberTube, stretches: list[float]) -> None:
+    assume(all(abs(stretch - kink) > 1e-9 for stretch in stretches for kink in kinks(tube.law)))
     x = np.array(stretches) * tube.free_length
     methods = (tube.load, tube.stiffness, tube.energy, tube.hysteresis)
     program = record(lambda x: tuple(method(x) for method in methods), inputs=("x",))

@@ -15,7 +15,7 @@ from springpoise.guard.amounts import celsius, shown
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.files import load
 from springpoise.guard.limits import Limit
-from springpoise.guard.service import at_temperature
+from springpoise.guard.service import at_temperature, service_of
 from springpoise.guard.verdict import Case, LimitVerdict
 from springpoise.mechanism.gas_mounting import check_gas_mounts
 from springpoise.springs import SpringWarning
@@ -153,8 +153,7 @@ def judge(document: PoiseFile) -> CheckReport:
     verdicts = []
     with warnings.catch_warnings(record=True) as caught:
         warnings.simplefilter("always", SpringWarning)
-        rods = {one.spring: one.rod for one in document.service}
-        check_gas_mounts(document.mechanism, rod_at=lambda name: rods.get(name, rods.get(None)))
+        check_gas_mounts(document.mechanism, rod_at=lambda name: service_of(document.service, name).rod)
         for i, limit in enumerate(document.limits):
             try:
                 verdicts.append(_worst(document, limit))

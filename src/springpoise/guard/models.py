@@ -113,7 +113,11 @@ def read_kind(family: Family, value: Any, place: Place, registry: Registry) -> A
         )
     rest = {key: item for key, item in table.items() if key != family.key}
     found = family.kinds[kind]
-    return _read_form(found, rest, place, registry) if isinstance(found, Form) else read_model(found, rest, place, registry)
+    return (
+        _read_form(found, rest, place, registry)
+        if isinstance(found, Form)
+        else read_model(found, rest, place, registry)
+    )
 
 
 def _read_form(form: Form, table: Mapping[str, Any], place: Place, registry: Registry) -> Any:

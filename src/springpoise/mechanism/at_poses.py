@@ -42,8 +42,11 @@ def at_poses(joint_axes: int) -> Callable[[_Method], _Method]:
                 return _where(_closed(self.linkage, angles), method(self, angles, pull))
             _check_shape(angles, count)
             with np.errstate(all="ignore"):
-                closed = _closed(self.linkage, angles)
-                return _nan_where_not_finite(method(self, angles, pull), angles, closed, count, joint_axes)
+                # One pose of several joints is floats, not NumPy's scalars, which are neither floats nor arrays.
+                one_by_one = isinstance(angles, np.ndarray) and angles.ndim == 1 and count > 1
+                pose = tuple(angles.tolist()) if one_by_one else angles
+                closed = _closed(self.linkage, pose)
+                return _nan_where_not_finite(method(self, pose, pull), angles, closed, count, joint_axes)
 
         return cast("_Method", convert)
 

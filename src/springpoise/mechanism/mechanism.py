@@ -13,6 +13,7 @@ from springpoise.carriers import Carrier, joints_of, namespace
 from springpoise.errors import InputError, InputTypeError
 from springpoise.gravity import STANDARD_GRAVITY
 from springpoise.linkages.body import Body, Point
+from springpoise.linkages.posed import posed
 from springpoise.linkages.protocol import Linkage
 from springpoise.mechanism.at_poses import at_poses
 from springpoise.mechanism.friction import Friction
@@ -389,7 +390,8 @@ class Mechanism:
 
     @at_poses(0)
     def _state_values(self, q: Any, gravity: Any = None) -> tuple[Any, ...]:
-        states = [mount.state(self.linkage, q, "") for mount in self.springs]
+        linkage = posed(self.linkage, q)
+        states = [mount.state(linkage, q, "") for mount in self.springs]
         return tuple((state.length, state.load, state.energy, state.margin) for state in states)
 
     @at_poses(0)

@@ -9,6 +9,7 @@ import numpy as np
 
 from springpoise.carriers import Carrier, joints_of, namespace
 from springpoise.errors import InputError
+from springpoise.linkages.posed import posed
 from springpoise.linkages.protocol import AppliedForce, PointMass
 from springpoise.mechanism.friction import Friction
 from springpoise.paths.protocol import pulls_of
@@ -33,7 +34,7 @@ Gravity: TypeAlias = tuple[Carrier, ...]
 
 def gravity_torques(mechanism: Mechanism, q: Carrier, gravity: Gravity) -> list[Carrier]:
     """For each joint, the torque that gravity exerts [N·m]."""
-    linkage: Any = mechanism.linkage
+    linkage = posed(mechanism.linkage, q)
     own = getattr(linkage, "gravity_torques", None)  # a long chain knows a shorter way
     totals: list[Carrier] = [0.0] * linkage.joint_count if own is None else list(own(q, gravity))
     for mass, at in (*(linkage.masses if own is None else ()), *_spring_masses(mechanism)):
@@ -44,16 +45,17 @@ def gravity_torques(mechanism: Mechanism, q: Carrier, gravity: Gravity) -> list[
 
 def spring_torques(mechanism: Mechanism, q: Carrier) -> list[Carrier]:
     """For each joint, the torque that the springs exert [N·m]."""
-    totals: list[Carrier] = [0.0] * mechanism.linkage.joint_count
+    linkage = posed(mechanism.linkage, q)
+    totals: list[Carrier] = [0.0] * linkage.joint_count
     for mount in mechanism.springs:
-        for joint, torque in enumerate(mount.torques(mechanism.linkage, q)):
+        for joint, torque in enumerate(mount.torques(linkage, q)):
             totals[joint] = totals[joint] + torque
     return totals
 
 
 def friction_bands(mechanism: Mechanism, q: Carrier, gravity: Gravity) -> list[Carrier]:
     """For each joint, the half-width of its friction band [N·m]."""
-    linkage: Any = mechanism.linkage
+    linkage = posed(mechanism.linkage, q)
     frictions = mechanism.joint_frictions
     forces: dict[str, Carrier] = {}
     if any(friction.depends_on_load for friction in frictions):
@@ -70,23 +72,25 @@ def friction_bands(mechanism: Mechanism, q: Carrier, gravity: Gravity) -> list[C
 
 def gravity_energy(mechanism: Mechanism, q: Carrier, gravity: Gravity) -> Carrier:
     """Potential energy of all weights [J], zero at the height of the ground's origin."""
+    linkage = posed(mechanism.linkage, q)
     total: Carrier = 0.0
-    for mass, at in (*mechanism.linkage.masses, *_spring_masses(mechanism)):
-        total = total - mass * _dot(gravity, mechanism.linkage.position(at, q))
+    for mass, at in (*linkage.masses, *_spring_masses(mechanism)):
+        total = total - mass * _dot(gravity, linkage.position(at, q))
     return total
 
 
 def spring_energy(mechanism: Mechanism, q: Carrier) -> Carrier:
     """Energy stored in all springs [J]."""
+    linkage = posed(mechanism.linkage, q)
     total: Carrier = 0.0
     for mount in mechanism.springs:
-        total = total + mount.energy(mechanism.linkage, q)
+        total = total + mount.energy(linkage, q)
     return total
 
 
 def pivot_forces(mechanism: Mechanism, q: Carrier, gravity: Gravity) -> tuple[tuple[Carrier, ...], ...]:
     """For each of the linkage's pivots, the force (x, y) of its bearing on what hangs on it [N]."""
-    linkage: Any = mechanism.linkage
+    linkage = posed(mechanism.linkage, q)
     if not hasattr(linkage, "pivot_forces"):
         raise InputError(f"Mechanism.linkage must be planar to know pivot loads, got a {type(linkage).__name__}")
     masses = (*linkage.masses, *_spring_masses(mechanism))

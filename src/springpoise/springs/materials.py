@@ -52,7 +52,7 @@ def _handbook(*segments: tuple[float, float, float, float, float]) -> tuple[Stre
     """Both columns of the table: from and to in mm, A in MPa·mm^m, m, A in kpsi·in^m."""
     ranges = [(low / 1e3, high / 1e3) for low, high, *_ in segments]
     metric = [
-        StrengthSegment(low, high, at_1_mm=a * 1e6, exponent=m)
+        StrengthSegment(low, high, at_unit_diameter=a * 1e6, exponent=m)
         for (low, high), (*_, a, m, _) in zip(ranges, segments, strict=True)
     ]
     inch = [
@@ -68,7 +68,7 @@ def _handbook(*segments: tuple[float, float, float, float, float]) -> tuple[Stre
 def _exam(low: float, high: float, a: float, m: float) -> StrengthSet:
     return StrengthSet(
         EXAM_HANDBOOK,
-        StrengthSegment(low / 1e3, high / 1e3, at_1_mm=a * 1e6, exponent=m),
+        StrengthSegment(low / 1e3, high / 1e3, at_unit_diameter=a * 1e6, exponent=m),
         source="wire constants of an exam handbook, as transcribed; its range was not seen and is taken from the 1987 set",
     )
 
@@ -285,12 +285,12 @@ PHOSPHOR_BRONZE = WireMaterial(
 """Phosphor bronze wire, ASTM B159, 0.1 to 7.5 mm; the strength steps at 0.6 and 2 mm."""
 
 
-def _european(name: str, at_1_mm: float, per_decade: float, source: str) -> WireMaterial:
+def _european(name: str, at_unit_diameter: float, per_decade: float, source: str) -> WireMaterial:
     return WireMaterial(
         f"EN 10270-1 wire, class {name}",
         strength=StrengthSet(
             f"EN 10270-1 {name}",
-            StrengthSegment(0.3e-3, 20e-3, at_1_mm=at_1_mm, per_decade=per_decade),
+            StrengthSegment(0.3e-3, 20e-3, at_unit_diameter=at_unit_diameter, per_decade=per_decade),
             source=source,
         ),
         young_modulus=206e9,

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import functools
 import os
-from typing import Any
 
 import attrs
 import numpy as np
@@ -88,7 +87,7 @@ class MeasuredSpring:
 
     @classmethod
     def read(cls, file: str | os.PathLike[str]) -> MeasuredSpring:
-        """The spring whose readings are in a CSV file.
+        r"""The spring whose readings are in a CSV file.
 
         The heading line names the columns, in any order, with units in brackets: ``length [mm]``
         and ``load [N]``, or for a torsion spring ``angle [deg]`` and ``torque [N*m]``; and where
@@ -112,7 +111,7 @@ class MeasuredSpring:
         >>> from pathlib import Path
         >>> from tempfile import mkdtemp
         >>> file = Path(mkdtemp()) / "bench.csv"
-        >>> _ = file.write_text("length [mm], load [N], unloading [N]\\n100, 12, 11\\n150, 30, 28\\n200, 50, 50\\n")
+        >>> _ = file.write_text("length [mm], load [N], unloading [N]\n100, 12, 11\n150, 30, 28\n200, 50, 50\n")
         >>> spring = MeasuredSpring.read(file)
         >>> round(spring.load(0.15), 9), round(spring.hysteresis(0.15), 9)
         (29.0, 1.0)

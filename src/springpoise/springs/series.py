@@ -9,9 +9,9 @@ from __future__ import annotations
 
 import functools
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from itertools import pairwise
-from typing import Any, NamedTuple
+from typing import Any
 
 import attrs
 import numpy as np
@@ -21,12 +21,10 @@ from springpoise import units
 from springpoise.carriers import Carrier, interpolate, namespace
 from springpoise.errors import InputError
 from springpoise.lookup import Lookup
-from springpoise.springs.compression import CompressionSpring
-from springpoise.springs.constant_force import ConstantForceSpring
 from springpoise.springs.extension import ExtensionSpring
 from springpoise.springs.parallel import checked_springs
 from springpoise.springs.protocol import Spring, hysteresis_of, working_range_of
-from springpoise.springs.zero_length import ZeroLengthSpring
+from springpoise.springs.series_laws import Law, law_of
 from springpoise.units import ScalarLike
 
 __all__ = ["SeriesSprings", "in_series", "wire_rope"]
@@ -40,69 +38,10 @@ ENDLESS = 1e3
 """A spring without a limit is tabulated this much further [m]; its last piece is straight and exact."""
 
 
-class _Law(NamedTuple):
-    """Length of one spring as a function of its load: corners, and straight lines or a curve between them."""
-
-    loads: Array
-    lengths: Array
-    curved: bool
-    last_rate: float  # N/m beyond the last corner; 0 for a plateau, inf where it ends there
-
-
-def _law(spring: Any) -> _Law:
-    low, high = (float(end) for end in working_range_of(spring))
-    if isinstance(spring, ZeroLengthSpring):
-        return _straight([0.0], [0.0], spring.rate, high)
-    if isinstance(spring, ExtensionSpring):
-        tension, free = float(spring.initial_tension), float(spring.free_length)
-        corners = ([0.0, tension], [free, free]) if tension > 0 else ([0.0], [free])
-        return _straight(*corners, spring.rate, high)
-    if isinstance(spring, CompressionSpring):
-        free, solid = float(spring.free_length), float(spring.solid_length)
-        return _Law(np.array([-spring.rate * (free - solid), 0.0]), np.array([solid, free]), False, math.inf)
-    if isinstance(spring, ConstantForceSpring):
-        return _Law(np.array([0.0, float(spring.pull)]), np.array([0.0, 0.0]), False, 0.0)
-    if not (math.isfinite(low) and math.isfinite(high)):
-        raise InputError(
-            f"in_series must be given springs with a finite working range, got {type(spring).__name__} with ({low}, {high})"
-        )
-    lengths = np.linspace(low, high, 129)
-    loads = np.array([float(spring.load(x)) for x in lengths])
-    if not np.all(np.diff(loads) > 0):
-        at = lengths[int(np.argmin(np.diff(loads)))]
-        raise InputError(
-            f"in_series must be given springs whose load grows with length, got {type(spring).__name__} "
-            f"whose load does not grow at {at:.6g} m"
-        )
-    return _Law(loads, lengths, True, math.inf)
-
-
-def _straight(loads: list[float], lengths: list[float], rate: float, high: float) -> _Law:
-    if math.isfinite(high):
-        loads = [*loads, loads[-1] + rate * (high - lengths[-1])]
-        return _Law(np.array(loads), np.array([*lengths, high]), False, math.inf)
-    return _Law(np.array(loads), np.array(lengths), False, float(rate))
-
-
-def _length_at(spring: Any, law: _Law, load: float) -> float:
-    """Length of one spring under a load within its law."""
-    if load > law.loads[-1]:
-        return float(law.lengths[-1] + (load - law.loads[-1]) / law.last_rate)
-    if not law.curved:
-        return float(np.interp(load, law.loads, law.lengths))
-    from scipy.optimize import brentq
-
-    piece = int(np.clip(np.searchsorted(law.loads, load) - 1, 0, law.loads.size - 2))
-    low, high = law.lengths[piece], law.lengths[piece + 1]
-    if load <= law.loads[piece]:
-        return float(low)
-    if load >= law.loads[piece + 1]:
-        return float(high)
-    return float(brentq(lambda x: float(spring.load(x)) - load, low, high, xtol=1e-15))
-
-
 def _springs(value: Any) -> tuple[Any, ...]:
     springs = checked_springs(value, "SeriesSprings.springs")
+    # A chain within a chain is one longer chain.
+    springs = tuple(link for s in springs for link in (s.springs if isinstance(s, SeriesSprings) else (s,)))
     for spring in springs:
         for name, field in attrs.fields_dict(type(spring)).items() if attrs.has(type(spring)) else ():
             if "unit" in field.metadata and np.ndim(getattr(spring, name)) and not hasattr(spring, "lengths"):
@@ -125,7 +64,7 @@ class SeriesSprings:
     @functools.cached_property
     def _table(self) -> Lookup:
         """Load over total length."""
-        return _tabulated(self.springs, [_law(spring) for spring in self.springs])
+        return _tabulated([law_of(spring) for spring in self.springs])
 
     @functools.cached_property
     def _slope(self) -> Lookup:
@@ -182,11 +121,11 @@ class SeriesSprings:
 
     @functools.cached_property
     def _band(self) -> Lookup | None:
-        laws = [_law(spring) for spring in self.springs]
+        laws = [law_of(spring) for spring in self.springs]
         lengths, bands = np.linspace(float(self._table.breaks[0]), min(float(self._table.breaks[-1]), 10.0), 257), []
         for x in lengths:
             load = float(self._table(float(x)))
-            each = [_length_at(s, law, load) for s, law in zip(self.springs, laws, strict=True)]
+            each = [law.length_at(load) for law in laws]
             compliances = [
                 1.0 / k if (k := float(s.stiffness(at))) > 0 else 0.0 for s, at in zip(self.springs, each, strict=True)
             ]
@@ -199,7 +138,7 @@ class SeriesSprings:
         return Lookup(lengths, rows)
 
 
-def _tabulated(springs: Sequence[Any], laws: Sequence[_Law]) -> Lookup:
+def _tabulated(laws: Sequence[Law]) -> Lookup:
     lowest, highest = max(float(law.loads[0]) for law in laws), math.inf
     for law in laws:
         if not math.isfinite(law.last_rate) or law.last_rate == 0.0:
@@ -210,7 +149,7 @@ def _tabulated(springs: Sequence[Any], laws: Sequence[_Law]) -> Lookup:
             "springs that pull and springs that push do not go in series"
         )
     open_end = math.isinf(highest)
-    corners = {float(load) for law in laws if not law.curved for load in law.loads} | {lowest}
+    corners = {float(load) for law in laws for load in (law.loads if not law.curved else _jumps_of(law))} | {lowest}
     corners |= set() if open_end else {highest}
     loads = sorted(load for load in corners if lowest <= load <= highest)
     if open_end:
@@ -218,10 +157,10 @@ def _tabulated(springs: Sequence[Any], laws: Sequence[_Law]) -> Lookup:
         loads.append(loads[-1] + rate * ENDLESS)
 
     def total(load: float) -> float:
-        return sum(_length_at(spring, law, load) for spring, law in zip(springs, laws, strict=True))
+        return sum(law.length_at(load) for law in laws)
 
     if any(law.curved for law in laws):
-        table = _refined(loads, total, [_slope_of(springs, laws)])
+        table = _refined(loads, total, lambda load, side: 1.0 / sum(law.compliance(load, side) for law in laws))
     else:
         table = _pieces([total(load) for load in loads], loads)
     plateau = [float(law.loads[-1]) for law in laws if law.last_rate == 0.0]
@@ -242,28 +181,14 @@ def _pieces(lengths: Sequence[float], loads: Sequence[float]) -> Lookup:
     return Lookup(xs, np.stack([fs[:-1], np.diff(fs) / np.diff(xs)], axis=1))
 
 
-def _slope_of(springs: Sequence[Any], laws: Sequence[_Law]) -> Any:
-    def slope(load: float, side: float) -> float:
-        """Rate of the chain just beside a load [N/m]."""
-        compliance = 0.0
-        for spring, law in zip(springs, laws, strict=True):
-            if law.curved:
-                compliance += 1.0 / float(spring.stiffness(_length_at(spring, law, load)))
-            else:
-                near = load + side * 1e-9 * (abs(load) + 1e-9)
-                at = int(np.searchsorted(law.loads, near))
-                if at >= law.loads.size:
-                    compliance += 1.0 / law.last_rate
-                elif at > 0:
-                    compliance += (law.lengths[at] - law.lengths[at - 1]) / (law.loads[at] - law.loads[at - 1])
-        return 1.0 / compliance
-
-    return slope
+def _jumps_of(law: Law) -> list[float]:
+    """Loads between which a curved spring's length stands still."""
+    still = np.flatnonzero(np.diff(law.lengths) == 0)
+    return [float(law.loads[i]) for at in still for i in (at, at + 1)]
 
 
-def _refined(loads: Sequence[float], total: Any, slopes: Sequence[Any]) -> Lookup:
+def _refined(loads: Sequence[float], total: Callable[[float], float], slope: Callable[[float, float], float]) -> Lookup:
     """Cubics with the right values and slopes, each halved until it errs by little enough."""
-    slope = slopes[0]
     size = max(abs(loads[0]), abs(loads[-1]))
     pieces: list[tuple[float, list[float]]] = []
     todo = list(pairwise(loads))[::-1]

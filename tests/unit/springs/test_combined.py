@@ -186,3 +186,50 @@ def test_bad_service():
         ExtensionSpring(1000, free_length=0.1).after(load_loss=0.1, at=0.05)
     with pytest.raises(InputError, match=r"at must be < free_length \(0\.3\) m, got 0\.4"):
         CompressionSpring(800, free_length=0.3, solid_length=0.1).after(load_loss=0.1, at=0.4)
+
+
+def _tube():
+    from springpoise.springs import RubberTube, rubber
+
+    law = rubber.Yeoh(c1=0.2315e6, c2=-3.3075e3, c3=107.03, fitted_over=(1.0, 4.4))
+    return RubberTube(outer_diameter=9.5e-3, inner_diameter=6.4e-3, free_length=0.3, law=law)
+
+
+def test_a_tube_that_is_slack_at_its_end_goes_in_series_with_a_rope():
+    from scipy.optimize import brentq
+
+    tube, rope = _tube(), wire_rope(diameter="2 mm", fill=0.5, modulus="1 GPa", length="0.5 m")
+    chain = in_series(tube, rope)
+    for load in (0.5, 5.0, 20.0, 40.0):
+        total = brentq(lambda x, f=load: tube.load(x) - f, 0.3, 1.3, xtol=1e-15) + 0.5 + load / rope.rate
+        assert chain.load(total) == pytest.approx(load, abs=1e-6)
+
+
+def test_chains_offsets_and_pairs_inside_a_chain_are_exact():
+    first = ExtensionSpring(2000, free_length=0.05, initial_tension=8)
+    second = ExtensionSpring(1000, free_length=0.05, initial_tension=5)
+    third = ExtensionSpring(500, free_length=0.04)
+    flat = in_series(first, second, third)
+    nested = in_series(in_series(first, second), third)
+    assert nested == flat
+    moved = in_series(OffsetSpring(first, by=0.02), second, third)
+    for load in (3.0, 6.0, 20.0):
+        x = 0.14 + load / 500 + max(load - 5, 0) / 1000 + max(load - 8, 0) / 2000
+        assert flat.load(x) == pytest.approx(load, rel=1e-12)
+        assert moved.load(x + 0.02) == pytest.approx(load, rel=1e-12)
+
+
+def test_a_jump_inside_a_spring_stays_a_jump_in_the_chain():
+    # The second of a parallel pair begins to pull with its initial tension at 0.137 m.
+    late = OffsetSpring(ExtensionSpring(1000, free_length=0.1, initial_tension=6, longest=0.2), by=0.037)
+    pair = in_parallel(ExtensionSpring(500, free_length=0.1, longest=0.2), late)
+    soft = ExtensionSpring(400, free_length=0.05)
+    chain = in_series(pair, soft)
+
+    def total(load):
+        # closed form: below 18.5 N one spring, from 24.5 N on both, between the pair stands still
+        own = 0.1 + load / 500 if load <= 18.5 else 0.137 if load <= 24.5 else 0.137 + (load - 24.5) / 1500
+        return own + 0.05 + load / 400
+
+    for load in (5.0, 18.0, 20.0, 23.0, 30.0, 60.0):
+        assert chain.load(total(load)) == pytest.approx(load, abs=1e-6)

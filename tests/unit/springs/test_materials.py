@@ -70,17 +70,17 @@ class TestStrength:
             MUSIC_WIRE.with_strength("1966")
 
     def test_segments_follow_one_another(self) -> None:
-        thin, thick = StrengthSegment(0, 1e-3, at_1_mm=2e9), StrengthSegment(2e-3, 3e-3, at_1_mm=2e9)
+        thin, thick = StrengthSegment(0, 1e-3, at_unit_diameter=2e9), StrengthSegment(2e-3, 3e-3, at_unit_diameter=2e9)
         with pytest.raises(InputError, match="follow one another, got 1 mm before 2 mm"):
             StrengthSet("gap", [thin, thick])
         with pytest.raises(InputTypeError, match="StrengthSegment objects"):
             StrengthSet("none", [])
         with pytest.raises(InputError, match="largest must be > smallest"):
-            StrengthSegment(2e-3, 1e-3, at_1_mm=2e9)
+            StrengthSegment(2e-3, 1e-3, at_unit_diameter=2e9)
 
     def test_units(self) -> None:
-        with pytest.raises(UnitError, match=r"StrengthSegment\.at_1_mm"):
-            StrengthSegment("0.1 mm", "6.5 mm", at_1_mm="2211 N")
+        with pytest.raises(UnitError, match=r"StrengthSegment\.at_unit_diameter"):
+            StrengthSegment("0.1 mm", "6.5 mm", at_unit_diameter="2211 N")
 
     def test_values_compare_and_hash(self) -> None:
         assert own() == own()

@@ -28,7 +28,7 @@ def happens(condition: Any) -> bool:
 
 @attrs.frozen(field_transformer=units.named_fields)
 class StrengthSegment:
-    """Tensile strength over a range of diameters: ``(at_1_mm - per_decade · lg d) / d^exponent``, d in mm.
+    """Tensile strength over a range of diameters: ``(at_unit_diameter - per_decade · lg d) / d^exponent``, d in mm.
 
     Design handbooks state the power law A/d^m (``per_decade`` = 0), European wire standards the
     logarithm (``exponent`` = 0).
@@ -40,7 +40,7 @@ class StrengthSegment:
 
     Examples
     --------
-    >>> music = StrengthSegment("0.10 mm", "6.5 mm", at_1_mm="2211 MPa", exponent=0.145)
+    >>> music = StrengthSegment("0.10 mm", "6.5 mm", at_unit_diameter="2211 MPa", exponent=0.145)
     >>> round(music.strength(0.002) / 1e6, 2)
     1999.58
     """
@@ -49,7 +49,7 @@ class StrengthSegment:
     """Smallest diameter [m], >= 0."""
     largest: float = attrs.field(converter=units.metre, validator=units.positive)
     """Largest diameter [m], above ``smallest``."""
-    at_1_mm: Carrier = attrs.field(converter=units.pascal, validator=units.positive, kw_only=True)
+    at_unit_diameter: Carrier = attrs.field(converter=units.pascal, validator=units.positive, kw_only=True)
     """Strength that the law gives at 1 mm [Pa], > 0, also where 1 mm is outside the range: A in MPa·mm^m."""
     exponent: Carrier = attrs.field(default=0.0, converter=units.number, validator=units.not_negative, kw_only=True)
     """Power of the diameter [1], >= 0: m."""
@@ -76,13 +76,13 @@ class StrengthSegment:
             Power of the diameter [1]: m.
         """
         stress = units.pascal(at_1_inch, "StrengthSegment.at_1_inch")
-        return cls(smallest, largest, at_1_mm=stress * (INCH * 1e3) ** exponent, exponent=exponent)
+        return cls(smallest, largest, at_unit_diameter=stress * (INCH * 1e3) ** exponent, exponent=exponent)
 
     def strength(self, wire: Carrier) -> Carrier:
         """Strength at a diameter [Pa] by this law, whatever its range."""
         d = wire * 1e3
         lg = namespace(wire).log(d) * (1.0 / math.log(10.0))
-        return (self.at_1_mm - self.per_decade * lg) * d ** (-self.exponent)
+        return (self.at_unit_diameter - self.per_decade * lg) * d ** (-self.exponent)
 
 
 def _segments(value: Any) -> tuple[StrengthSegment, ...]:
@@ -201,6 +201,6 @@ def as_strength(value: StrengthSet | StrengthSegment | Iterable[StrengthSegment]
         return value
     if isinstance(value, str | float | int) or hasattr(value, "m_as"):
         stress: Any = value
-        return StrengthSet("one value", StrengthSegment(0.0, 1.0, at_1_mm=stress))
+        return StrengthSet("one value", StrengthSegment(0.0, 1.0, at_unit_diameter=stress))
     segments: Any = value
     return StrengthSet("segments given", segments)
