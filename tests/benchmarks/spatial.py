@@ -1,8 +1,8 @@
 """Chains in space: the compiled holding torque against pinocchio, and what recording costs.
 
-Rows for ``run.py``, whose ``Row`` and ``ratio`` they use; alone with
-
     python tests/benchmarks/spatial.py
+
+prints these rows alone.
 
 The robot is the UR5 of the package example-robot-data (BSD-3-Clause).
 """
@@ -20,7 +20,7 @@ from typing import Any
 
 import numpy as np
 import pinocchio as pin
-from run import Row, ratio, table
+from rows import Row, ratio, show
 
 from springpoise import Body, Feedforward, Mechanism, Point, SpatialChain, SpringMount, Straight, ZeroLengthSpring
 from springpoise.linkages import SpatialLink
@@ -137,4 +137,4 @@ def spatial_rows() -> Iterator[Row]:
 
 
 if __name__ == "__main__":
-    print(table(list(spatial_rows())))
+    show(spatial_rows)

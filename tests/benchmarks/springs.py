@@ -2,20 +2,17 @@
 
     python tests/benchmarks/springs.py
 
-prints one table, in the rows of ``run.py`` beside it. Nothing is asserted here.
+prints these rows alone. Nothing is asserted here.
 """
 
 from __future__ import annotations
 
-import importlib.util
-import os
-import sys
 import timeit
 from collections.abc import Iterator
-from pathlib import Path
 from typing import Any
 
 import numpy as np
+from rows import Row, ratio, show
 
 from springpoise import (
     Arm,
@@ -30,21 +27,6 @@ from springpoise import (
     Straight,
 )
 from springpoise.springs import rubber
-
-
-def _beside() -> Any:
-    """The module ``run.py``, whose rows, ratios and table are used."""
-    name = "benchmarks_run"
-    if name not in sys.modules:
-        spec = importlib.util.spec_from_file_location(name, Path(__file__).with_name("run.py"))
-        assert spec is not None
-        assert spec.loader is not None
-        sys.modules[name] = importlib.util.module_from_spec(spec)
-        spec.loader.exec_module(sys.modules[name])
-    return sys.modules[name]
-
-
-run = _beside()
 
 COIL = ExtensionSpring(1200.0, free_length=0.05, initial_tension=10.0, longest=0.30)
 SIZES: dict[str, Any] = {"outer_diameter": "9.525 mm", "inner_diameter": "6.35 mm", "free_length": "60 mm"}
@@ -72,13 +54,13 @@ def pulled_arm(spring: Any) -> Mechanism:
     return Mechanism(Arm(Body(2.0, (0.35, 0.0))), springs=SpringMount(spring, path), travel=(-0.2, 0.7))
 
 
-def spring_call_rows(number: int = 20_000, repeats: int = 11) -> Iterator[Any]:
+def spring_call_rows(number: int = 20_000, repeats: int = 11) -> Iterator[Row]:
     """One call of a compiled holding torque."""
     peer = timeit.Timer("f(0.3)", globals={"f": Feedforward(pulled_arm(COIL)).compile()})
     for name, spring in SPRINGS.items():
         ours = timeit.Timer("f(0.3)", globals={"f": Feedforward(pulled_arm(spring)).compile()})
-        share, mine, theirs = run.ratio(ours, peer, number=number, repeats=repeats)
-        yield run.Row(
+        share, mine, theirs = ratio(ours, peer, number=number, repeats=repeats)
+        yield Row(
             f"compiled torque, {name}, one call / extension spring",
             f"{share:.2f} ({1e9 * mine:.0f} / {1e9 * theirs:.0f} ns)",
             "",
@@ -86,7 +68,7 @@ def spring_call_rows(number: int = 20_000, repeats: int = 11) -> Iterator[Any]:
         )
 
 
-def spring_pose_rows(poses: int = 1_000_000, repeats: int = 7) -> Iterator[Any]:
+def spring_pose_rows(poses: int = 1_000_000, repeats: int = 7) -> Iterator[Row]:
     """Many poses at once, compiled for arrays."""
     q = np.linspace(-0.2, 0.7, poses)
     peer = timeit.Timer("f(q)", globals={"f": Feedforward(pulled_arm(COIL)).compile(arrays=True), "q": q})
@@ -95,8 +77,8 @@ def spring_pose_rows(poses: int = 1_000_000, repeats: int = 7) -> Iterator[Any]:
         function = Feedforward(mechanism).compile(arrays=True)
         np.testing.assert_allclose(function(q[:9]), mechanism.holding_torque(q[:9]), rtol=1e-11, atol=1e-11)
         ours = timeit.Timer("f(q)", globals={"f": function, "q": q})
-        share, mine, theirs = run.ratio(ours, peer, number=1, repeats=repeats)
-        yield run.Row(
+        share, mine, theirs = ratio(ours, peer, number=1, repeats=repeats)
+        yield Row(
             f"{poses} poses, {name} / extension spring",
             f"{share:.2f} ({1e3 * mine:.1f} / {1e3 * theirs:.1f} ms)",
             "",
@@ -104,13 +86,11 @@ def spring_pose_rows(poses: int = 1_000_000, repeats: int = 7) -> Iterator[Any]:
         )
 
 
-def main() -> None:
-    """Measure everything and print the table."""
-    print(run.table([*spring_call_rows(), *spring_pose_rows()]))
+def spring_rows() -> Iterator[Row]:
+    """All of them."""
+    yield from spring_call_rows()
+    yield from spring_pose_rows()
 
 
 if __name__ == "__main__":
-    if any(os.environ.get(name) != value for name, value in run.ONE_THREAD.items()):
-        # The number of threads is read when NumPy is loaded: start again.
-        os.execve(sys.executable, [sys.executable, *sys.argv], {**os.environ, **run.ONE_THREAD})
-    main()
+    show(spring_rows)
