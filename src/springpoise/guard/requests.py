@@ -122,6 +122,8 @@ class StockRequest(DesignRequest):
         default=None, converter=attrs.converters.optional(torque_or_share), metadata={"write": text_of_torque_or_share}
     )
     """Greatest worst residual that counts as a fit [N·m], or a share of the peak gravity torque; None for none."""
+    least_margin: float = attrs.field(default=0.0, converter=units.metre, validator=units.not_negative)
+    """Distance that every spring keeps from both ends of its lengths [m], >= 0."""
     resolution: float = attrs.field(default=1e-4, converter=units.metre, validator=units.positive)
     """Steps to which refined mounts are rounded [m], > 0."""
 
