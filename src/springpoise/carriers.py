@@ -97,7 +97,7 @@ class Floats:
 
     @staticmethod
     def sign(x: float) -> float:
-        return x if math.isnan(x) else float((x > 0.0) - (x < 0.0))
+        return x if math.isnan(x) else float(x > 0.0) - float(x < 0.0)
 
     @staticmethod
     def maximum(x: float, y: float) -> float:

@@ -16,20 +16,20 @@ GLOSSARY = Path(__file__).parents[2] / "docs" / "glossary.md"
 VARIADIC = {inspect.Parameter.VAR_POSITIONAL, inspect.Parameter.VAR_KEYWORD}
 
 
+BESIDE = ("feedforward", "linkages.members", "mechanism", "mechanism.gas_mounting", "testing")
+"""Modules that the reference shows and that the package's own names do not lead to."""
+
+
 def _modules() -> Iterator[ModuleType]:
-    """The package, its public submodules and theirs."""
-    waiting = [
-        springpoise,
-        importlib.import_module("springpoise.feedforward"),
-        importlib.import_module("springpoise.mechanism"),
-    ]
+    """The package, its public submodules and theirs; folders without public names of their own lead nowhere."""
+    waiting = [springpoise, *(importlib.import_module(f"springpoise.{name}") for name in BESIDE)]
     seen: set[str] = set()
     for module in waiting:
         if module.__name__ in seen:
             continue
         seen.add(module.__name__)
         yield module
-        members = [getattr(module, name) for name in module.__all__]
+        members = [getattr(module, name) for name in getattr(module, "__all__", ())]
         waiting += [member for member in members if isinstance(member, ModuleType)]
 
 

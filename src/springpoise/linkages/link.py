@@ -9,7 +9,7 @@ import attrs
 
 from springpoise import units
 from springpoise.carriers import Carrier
-from springpoise.errors import InputError, InputTypeError
+from springpoise.errors import InputError, InputTypeError, UnitError
 from springpoise.linkages.body import Body, Point
 
 __all__ = ["Coupling", "Joint", "Link", "bodies_of", "coupling_of"]
@@ -43,10 +43,10 @@ def _carried(value: Any) -> tuple[Body, ...] | None:
     return None if value is None else bodies_of(value, "Link.carried")
 
 
-def _joint(value: Any) -> str:
+def _joint(value: Any) -> Joint:
     if value not in ("revolute", "prismatic"):
         raise InputError(f"Link.joint must be 'revolute' or 'prismatic', got {value!r}")
-    return str(value)
+    return "prismatic" if value == "prismatic" else "revolute"
 
 
 def _ratios(value: Any) -> tuple[tuple[str, Any], ...]:
@@ -57,6 +57,16 @@ def _ratios(value: Any) -> tuple[tuple[str, Any], ...]:
         if not (isinstance(pair, tuple | list) and len(pair) == 2 and isinstance(pair[0], str)):
             raise InputTypeError(f"Coupling.ratios must be link names and ratios, got {value!r}")
     return tuple((name, units.number(ratio, f"Coupling.ratios[{name!r}]")) for name, ratio in pairs)
+
+
+def _offset(value: Any) -> Any:
+    """A travel of either kind."""
+    if not (isinstance(value, str) or hasattr(value, "m_as")):
+        return units.number(value, "Coupling.offset")
+    try:
+        return units.radian(value, "Coupling.offset")
+    except UnitError:
+        return units.metre(value, "Coupling.offset")
 
 
 def _pivot(value: Any) -> Point | None:
@@ -75,7 +85,7 @@ class Coupling:
 
     ratios: tuple[tuple[str, Carrier], ...] = attrs.field(converter=_ratios)
     """Names of the followed links and their ratios [1, or m/rad, rad/m, between joints of two kinds]."""
-    offset: Carrier = attrs.field(default=0.0, converter=units.number, kw_only=True)
+    offset: Carrier = attrs.field(default=0.0, converter=_offset, kw_only=True)
     """Travel where the followed joints stand at zero [rad, or m]."""
 
 

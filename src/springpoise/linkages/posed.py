@@ -8,7 +8,6 @@ from typing import TYPE_CHECKING, Any
 from springpoise.carriers import Carrier
 from springpoise.linkages.body import Point
 from springpoise.linkages.protocol import AppliedForce, Linkage
-from springpoise.linkages.statics import pivot_forces
 
 if TYPE_CHECKING:
     from springpoise.linkages.dyads import Assembled
@@ -43,19 +42,21 @@ class Posed:
         return self._found
 
     def position(self, point: Point, q: Carrier) -> tuple[Carrier, ...]:
-        """As the linkage\'s."""
+        """As the linkage's."""
         if q is not self._q:
             return self._linkage.position(point, q)
         return self._standing[0][self._linkage.named(point)].place(point.at)
 
     def jacobian(self, point: Point, q: Carrier) -> tuple[tuple[Carrier, ...], ...]:
-        """As the linkage\'s."""
+        """As the linkage's."""
         if q is not self._q:
             return self._linkage.jacobian(point, q)
         return self._standing[0][self._linkage.named(point)].moves(point.at)
 
     def pivot_forces(self, applied: Sequence[AppliedForce], q: Carrier) -> tuple[tuple[Carrier, ...], ...]:
-        """As the linkage\'s."""
+        """As the linkage's."""
         if q is not self._q:
             return self._linkage.pivot_forces(applied, q)
+        from springpoise.linkages.statics import pivot_forces
+
         return pivot_forces(self._linkage.members, *self._standing, applied)

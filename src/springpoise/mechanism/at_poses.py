@@ -32,6 +32,7 @@ def at_poses(joint_axes: int) -> Callable[[_Method], _Method]:
             angles = _poses(self.linkage, q)
             pull = self.gravity if gravity is None else _gravity(gravity, len(self.gravity))
             count = self.linkage.joint_count
+            pose: Any
             if type(angles) is float and count == 1:
                 good = math.isfinite(angles)
                 closed = _closed(self.linkage, angles) if good else True
@@ -43,8 +44,9 @@ def at_poses(joint_axes: int) -> Callable[[_Method], _Method]:
             _check_shape(angles, count)
             with np.errstate(all="ignore"):
                 # One pose of several joints is floats, not NumPy's scalars, which are neither floats nor arrays.
-                one_by_one = isinstance(angles, np.ndarray) and angles.ndim == 1 and count > 1
-                pose = tuple(angles.tolist()) if one_by_one else angles
+                pose = angles
+                if isinstance(angles, np.ndarray) and angles.ndim == 1 and count > 1:
+                    pose = tuple(angles.tolist())
                 closed = _closed(self.linkage, pose)
                 return _nan_where_not_finite(method(self, pose, pull), angles, closed, count, joint_axes)
 

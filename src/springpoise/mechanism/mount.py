@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING, Any
 
 import attrs
@@ -89,8 +90,14 @@ class SpringMount:
         return tuple(PointMass(0.5 * self.count * self.moving_mass, end) for end in ends)
 
     def hanging_stretch(self, x: Carrier, gravity: float = STANDARD_GRAVITY) -> Carrier:
-        """How much longer the spring hangs by its own weight at length ``x`` [m]: half its weight over its stiffness."""
-        return 0.5 * self.moving_mass * gravity / self.ask("stiffness", x)
+        """How much longer the spring hangs by its own weight at length ``x`` [m]: half its weight over its stiffness.
+
+        Infinite where the spring is slack.
+        """
+        stiffness = self.ask("stiffness", x)
+        xp = namespace(stiffness)
+        stretch = 0.5 * self.moving_mass * gravity / xp.where(stiffness > 0.0, stiffness, 1.0)
+        return xp.where(stiffness > 0.0, stretch, math.inf)
 
     def spring_length(self, linkage: Linkage, q: Carrier) -> Carrier:
         """The spring's own length [m], or angle [rad]."""

@@ -26,7 +26,7 @@ def joint_units_of(linkage: Linkage) -> tuple[str, ...]:
     return ("rad",) * linkage.joint_count if own is None else own
 
 
-def travel_of(value: Any, kinds: tuple[str, ...]) -> Any:
+def travel_of(value: Any, kinds: Sequence[str]) -> Any:
     """One range, or for several joints a tuple with a range each; None for not given.
 
     Raises

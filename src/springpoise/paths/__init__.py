@@ -12,6 +12,7 @@ from springpoise.lazy import names_of
 if TYPE_CHECKING:
     from springpoise.paths.cable import Cable as Cable
     from springpoise.paths.cable import Disc as Disc
+    from springpoise.paths.drum import Drum as Drum
     from springpoise.paths.joint_travel import JointTravel as JointTravel
     from springpoise.paths.protocol import Path as Path
     from springpoise.paths.spool import GuideRoller as GuideRoller
@@ -21,6 +22,7 @@ if TYPE_CHECKING:
 __all__ = [
     "Cable",
     "Disc",
+    "Drum",
     "GuideRoller",
     "JointTravel",
     "Path",
@@ -31,6 +33,7 @@ __all__ = [
 _HOME = {
     "Cable": "cable",
     "Disc": "cable",
+    "Drum": "drum",
     "GuideRoller": "spool",
     "JointTravel": "joint_travel",
     "Path": "protocol",

@@ -249,6 +249,10 @@ class _Profile:
     def __init__(self, points: Any) -> None:
         from scipy.interpolate import CubicSpline
 
+        if isinstance(points, list | tuple):  # of pairs, perhaps of strings
+            points = [
+                units.metre_pair(point, "points") if isinstance(point, list | tuple) else point for point in points
+            ]
         line = np.asarray(units.metre(points, "points"), dtype=np.float64)
         if line.ndim != 2 or line.shape[1] != 2 or line.shape[0] < 8:
             raise InputError(f"points must be of shape (n, 2) in m with n >= 8, got shape {line.shape}")
@@ -267,7 +271,8 @@ class _Profile:
         self.speed = self.spline.derivative()
         self.bend = self.speed.derivative()
         tangents = self.speed(self.along)
-        self.normals = np.unwrap(np.arctan2(tangents[:, 1], tangents[:, 0])) - math.pi / 2
+        normals = np.unwrap(np.arctan2(tangents[:, 1], tangents[:, 0])) - math.pi / 2
+        self.normals = normals - 2.0 * math.pi * round((normals[0] + normals[-1]) / (4.0 * math.pi))
         if not np.all(np.diff(self.normals) > 0):  # points that scatter
             place = int(np.argmin(np.diff(self.normals)))
             raise _hollow(line, place if way > 0 else len(line) - 1 - place)
@@ -341,9 +346,11 @@ class _Profile:
     def _must_reach(self, normals: Array, reached: Array) -> None:
         if not np.all(reached):
             first, last = self.normals[0], self.normals[-1]
+            middle = 0.5 * (first + last)
+            needed = middle + math.remainder(normals[int(np.argmin(reached))] - middle, 2.0 * math.pi)
             raise InputError(
                 f"points must reach to where the cable leaves, got normals from {first:.4f} to {last:.4f} rad, "
-                f"needed {normals[int(np.argmin(reached))]:.4f}"
+                f"needed {needed:.4f}"
             )
 
 
