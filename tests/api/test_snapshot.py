@@ -20,7 +20,18 @@ import pytest
 SNAPSHOT = Path(__file__).with_name("snapshot.txt")
 MODULES = ["springpoise"] + [
     f"springpoise.{name}"
-    for name in ("balance", "feedforward", "gravity", "guard", "linkages", "paths", "springs", "units")
+    for name in (
+        "balance",
+        "feedforward",
+        "gravity",
+        "guard",
+        "linkages",
+        "mechanism",
+        "paths",
+        "springs",
+        "testing",
+        "units",
+    )
 ]
 
 

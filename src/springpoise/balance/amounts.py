@@ -183,7 +183,7 @@ class _Task:
         scales[scales == 0] = 1.0
         least = np.concatenate([np.eye(c.rays.shape[1])[0] * SOFTEST * bool(np.any(c.fixed)) for c in columns.values()])
         scaled = matrix / scales
-        shares = (least + _solved(scaled, -rest / size - scaled @ least, self.norm)) / scales
+        shares = (least + solved_shares(scaled, -rest / size - scaled @ least, self.norm)) / scales
         tuned = {}
         for i, own in columns.items():
             amounts = own.rays @ shares[: own.rays.shape[1]]
@@ -218,7 +218,7 @@ class _Task:
         return values
 
 
-def _solved(matrix: Array, goal: Array, norm: str) -> Array:
+def solved_shares(matrix: Array, goal: Array, norm: str) -> Array:
     """Shares, none of them negative, that bring ``matrix @ shares`` closest to ``goal``."""
     import scipy.optimize
 
