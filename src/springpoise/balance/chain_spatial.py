@@ -157,7 +157,7 @@ def _centre(group: list[SpatialLink], frames: dict[str, _Frame], near: float) ->
     misses = [float(np.linalg.norm(p @ (centre - o))) for p, o in zip(across, origins, strict=True)]
     if max(misses) > near:
         raise InputError(f"{rule}, got axes of {names} that miss each other by {2e3 * max(misses):.3g} mm; {hint}")
-    return np.asarray(centre)
+    return np.array(centre, dtype=np.float64)
 
 
 def _line(i: int, centres: list[Vector], masses: list[tuple[float, Vector]], name: str, reach: float) -> Vector:

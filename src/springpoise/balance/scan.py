@@ -63,7 +63,7 @@ class Scan:
         self.where = np.zeros((size, 2))
         self.mounts: list[_BestPart] = []
         self.miss = (math.inf, 0, 0.0, 0.0, "")  # how far out, candidate, radius, height, reason
-        self.counted = dict.fromkeys((SLACK, OVERSTRETCHED, NO_ROOM, UNREACHABLE, OVER_LIMIT), 0)
+        self.counted: dict[str, int] = dict.fromkeys((SLACK, OVERSTRETCHED, NO_ROOM, UNREACHABLE, OVER_LIMIT), 0)
 
     def look_at(self, radii: Array, height: float) -> None:
         """All candidates of all attachment radii at one anchor height."""

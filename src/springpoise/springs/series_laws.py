@@ -63,7 +63,8 @@ class Law:
             at = self.loads[piece] if x == low else self.loads[piece + 1] if x == high else float(self.spring.load(x))
             return float(at) - load
 
-        return float(brentq(missing, low, high, xtol=1e-15))
+        root: Any = brentq(missing, low, high, xtol=1e-15)
+        return float(root)
 
     def compliance(self, load: float, side: float) -> float:
         """How much longer the spring gets for one newton, just beside a load [m/N]; ``side`` is +1 above, -1 below."""

@@ -16,8 +16,31 @@ __all__ = ["guarded"]
 # Operations that give NaN as soon as one argument is NaN. A `where`, a `maximum`, a comparison may
 # drop it; `pow` and `hypot` know cases in which it does not matter.
 SPREADING = frozenset(
-    "add subtract multiply divide negative abs sqrt exp expm1 log log1p "
-    "sin cos tan asin acos atan sinh cosh tanh asinh atan2 look_up".split()
+    [
+        "add",
+        "subtract",
+        "multiply",
+        "divide",
+        "negative",
+        "abs",
+        "sqrt",
+        "exp",
+        "expm1",
+        "log",
+        "log1p",
+        "sin",
+        "cos",
+        "tan",
+        "asin",
+        "acos",
+        "atan",
+        "sinh",
+        "cosh",
+        "tanh",
+        "asinh",
+        "atan2",
+        "look_up",
+    ]
 )
 
 

@@ -41,7 +41,10 @@ def test_positions_and_their_derivatives():
 
 
 def test_pivot_force_balances_what_acts_on_the_arm():
-    forces = [AppliedForce(Point("arm", (0.1, 0.0)), (2.0, -5.0)), AppliedForce(Point("ground", (0.0, 0.0)), (9.0, 9.0))]
+    forces = [
+        AppliedForce(Point("arm", (0.1, 0.0)), (2.0, -5.0)),
+        AppliedForce(Point("ground", (0.0, 0.0)), (9.0, 9.0)),
+    ]
     assert ARM.pivot_forces(forces, 0.3) == ((-2.0, 5.0),)
 
 
@@ -65,14 +68,34 @@ def test_with_body_and_values():
         (lambda: Body([1.0, -3.0], (0, 0)), InputError, r"^Body\.mass must be >= 0 kg, got -3\.0$"),
         (lambda: Body("2 N", (0, 0)), UnitError, r"^Body\.mass must be .*, got '2 N'"),
         (lambda: Body(None, (0, 0)), InputTypeError, r"^Body\.mass must be .* None of type NoneType$"),
-        (lambda: Body(1, 0.3), InputTypeError, r"^Body\.com must be a pair or three values in m, got 0\.3 of type float$"),
-        (lambda: Body(1, (1, 2, 3, 4)), InputError, r"^Body\.com must be a pair or three values in m, got 4 values: \(1, 2, 3, 4\)$"),
-        (lambda: Arm(Body(1, (1, 2, 3))), InputError, r"^Body\.com must be \(x, y\) in m on an Arm, got \(1\.0, 2\.0, 3\.0\)$"),
-        (lambda: ARM.position(Point("arm", (1, 2, 3)), 0.1), InputError, r"^Point\.at must be \(x, y\) in m on an Arm, got \(1\.0, 2\.0, 3\.0\)$"),
+        (
+            lambda: Body(1, 0.3),
+            InputTypeError,
+            r"^Body\.com must be a pair or three values in m, got 0\.3 of type float$",
+        ),
+        (
+            lambda: Body(1, (1, 2, 3, 4)),
+            InputError,
+            r"^Body\.com must be a pair or three values in m, got 4 values: \(1, 2, 3, 4\)$",
+        ),
+        (
+            lambda: Arm(Body(1, (1, 2, 3))),
+            InputError,
+            r"^Body\.com must be \(x, y\) in m on an Arm, got \(1\.0, 2\.0, 3\.0\)$",
+        ),
+        (
+            lambda: ARM.position(Point("arm", (1, 2, 3)), 0.1),
+            InputError,
+            r"^Point\.at must be \(x, y\) in m on an Arm, got \(1\.0, 2\.0, 3\.0\)$",
+        ),
         (lambda: Body(1, (1, math.nan)), InputError, r"^Body\.com must be .* finite, got nan$"),
         (lambda: Point("", (0, 0)), InputTypeError, r"^Point\.body must be the name of a body, .*, got ''$"),
         (lambda: Point(3, (0, 0)), InputTypeError, r"^Point\.body must be the name of a body, .*, got 3$"),
-        (lambda: Point("arm", "x"), InputTypeError, r"^Point\.at must be a pair or three values in m, got 'x' of type str$"),
+        (
+            lambda: Point("arm", "x"),
+            InputTypeError,
+            r"^Point\.at must be a pair or three values in m, got 'x' of type str$",
+        ),
         (lambda: Point("arm", ("1 s", 0)), UnitError, r"^Point\.at must be a value in m, got '1 s'"),
         (
             lambda: ARM.position(Point("fore", (0, 0)), 0.0),

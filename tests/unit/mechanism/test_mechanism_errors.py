@@ -46,7 +46,11 @@ METHODS = (
             InputTypeError,
             r"^Mechanism\.springs must be SpringMounts, got \[Straight",
         ),
-        (lambda: Mechanism(ARM, friction=0.2), InputTypeError, r"^Mechanism\.friction must be a Friction, or a sequence with one for each joint, got 0\.2$"),
+        (
+            lambda: Mechanism(ARM, friction=0.2),
+            InputTypeError,
+            r"^Mechanism\.friction must be a Friction, or a sequence with one for each joint, got 0\.2$",
+        ),
         (
             lambda: Mechanism(ARM, travel=(1.0, 1.0)),
             InputError,

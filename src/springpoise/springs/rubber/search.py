@@ -40,7 +40,7 @@ def best_single(
     costs = [solved(point)[0] for point in grid]
     i = int(np.argmin(costs))
     low, high = grid[max(i - 1, 0)], grid[min(i + 1, grid.size - 1)]
-    found = minimize_scalar(lambda t: solved(t)[0], bounds=(low, high), method="bounded", options={"xatol": 1e-12})
+    found: Any = minimize_scalar(lambda t: solved(t)[0], bounds=(low, high), method="bounded", options={"xatol": 1e-12})
     best = float(found.x) if found.fun <= costs[i] else float(grid[i])
     return solved(best)[1], scale * math.exp(best)
 
