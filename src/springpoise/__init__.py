@@ -16,6 +16,7 @@ if TYPE_CHECKING:
     from springpoise import linkages as linkages
     from springpoise import paths as paths
     from springpoise import springs as springs
+    from springpoise import tolerance as tolerance
     from springpoise import units as units
     from springpoise.feedforward import Actuator as Actuator
     from springpoise.feedforward import Feedforward as Feedforward
@@ -90,10 +91,11 @@ __all__ = [
     "linkages",
     "paths",
     "springs",
+    "tolerance",
     "units",
 ]
 
-_SUBMODULES = ("balance", "gravity", "guard", "linkages", "paths", "springs", "units")
+_SUBMODULES = ("balance", "gravity", "guard", "linkages", "paths", "springs", "tolerance", "units")
 _HOME = {
     "STANDARD_GRAVITY": "gravity",
     "Actuator": "feedforward",

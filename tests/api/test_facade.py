@@ -39,7 +39,7 @@ CLASSES = {
     "springpoise.feedforward": {"Actuator", "Feedforward", "Motor"},
 }
 CONSTANTS = {"STANDARD_GRAVITY", "__version__"}
-SUBMODULES = {"balance", "gravity", "guard", "linkages", "paths", "springs", "units"}
+SUBMODULES = {"balance", "gravity", "guard", "linkages", "paths", "springs", "tolerance", "units"}
 
 
 def test_the_list_of_public_names() -> None:

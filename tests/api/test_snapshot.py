@@ -30,6 +30,7 @@ MODULES = ["springpoise"] + [
         "paths",
         "springs",
         "testing",
+        "tolerance",
         "units",
     )
 ]

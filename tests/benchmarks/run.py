@@ -12,8 +12,10 @@ from collections.abc import Iterator
 
 from one_arm import one_arm_rows
 from rows import Row, show
+from solvers import solver_rows
 from spatial import spatial_rows
 from springs import spring_rows
+from tolerance import tolerance_rows
 
 
 def all_rows() -> Iterator[Row]:
@@ -21,6 +23,8 @@ def all_rows() -> Iterator[Row]:
     yield from one_arm_rows()
     yield from spring_rows()
     yield from spatial_rows()
+    yield from tolerance_rows()
+    yield from solver_rows()
 
 
 if __name__ == "__main__":

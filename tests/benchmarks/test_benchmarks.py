@@ -23,6 +23,9 @@ pytest.importorskip("pinocchio", reason="the benchmarks compare with pinocchio: 
         ("spatial", "spatial_call_rows", {"number": 2, "repeats": 1}, 1),
         ("spatial", "spatial_pose_rows", {"poses": 100, "repeats": 1}, 1),
         ("spatial", "spatial_recording_rows", {"repeats": 1}, 2),
+        ("solvers", "place_rows", {"repeats": 1, "generations": 2}, 5),
+        ("solvers", "method_rows", {"repeats": 1}, 1),
+        ("tolerance", "scatter_rows", {"builds": 10, "repeats": 1}, 3),
     ],
 )
 def test_rows_and_table(module: str, rows: str, sizes: dict[str, int], count: int) -> None:

@@ -22,6 +22,15 @@ if TYPE_CHECKING:
     from springpoise.balance.chain_result import BalancingSpring as BalancingSpring
     from springpoise.balance.fit import SpringFit as SpringFit
     from springpoise.balance.fit import fit_springs as fit_springs
+    from springpoise.balance.methods import compare_methods as compare_methods
+    from springpoise.balance.methods_assumptions import MethodAssumptions as MethodAssumptions
+    from springpoise.balance.methods_figures import MethodFigures as MethodFigures
+    from springpoise.balance.methods_result import MethodComparison as MethodComparison
+    from springpoise.balance.methods_result import MethodRow as MethodRow
+    from springpoise.balance.place_geometry import place as place
+    from springpoise.balance.place_result import PlacedKnob as PlacedKnob
+    from springpoise.balance.place_result import PlacedLimit as PlacedLimit
+    from springpoise.balance.place_result import Placement as Placement
     from springpoise.balance.residuals import Residual as Residual
     from springpoise.balance.residuals import residual as residual
     from springpoise.balance.route import PulleyRoute as PulleyRoute
@@ -37,6 +46,13 @@ __all__ = [
     "ChainFit",
     "ChainSpring",
     "JointResidual",
+    "MethodAssumptions",
+    "MethodComparison",
+    "MethodFigures",
+    "MethodRow",
+    "PlacedKnob",
+    "PlacedLimit",
+    "Placement",
     "PulleyRoute",
     "Residual",
     "SineMatch",
@@ -45,9 +61,11 @@ __all__ = [
     "StockCandidate",
     "StockSearch",
     "balance_chain",
+    "compare_methods",
     "fit_chain",
     "fit_springs",
     "joint_residuals",
+    "place",
     "read_stock",
     "residual",
     "search_stock",
@@ -60,6 +78,13 @@ _HOME = {
     "ChainFit": "chain_fit",
     "ChainSpring": "chain",
     "JointResidual": "chain_fit",
+    "MethodAssumptions": "methods_assumptions",
+    "MethodComparison": "methods_result",
+    "MethodFigures": "methods_figures",
+    "MethodRow": "methods_result",
+    "PlacedKnob": "place_result",
+    "PlacedLimit": "place_result",
+    "Placement": "place_result",
     "PulleyRoute": "route",
     "Residual": "residuals",
     "SineMatch": "sine",
@@ -68,9 +93,11 @@ _HOME = {
     "StockCandidate": "candidates",
     "StockSearch": "candidates",
     "balance_chain": "chain",
+    "compare_methods": "methods",
     "fit_chain": "chain_fit",
     "fit_springs": "fit",
     "joint_residuals": "chain_fit",
+    "place": "place_geometry",
     "read_stock": "stock",
     "residual": "residuals",
     "search_stock": "search",

@@ -144,7 +144,7 @@ def _at_one_pose(value: Any, good: bool) -> Any:
     """A plain float, or an array where a field is one; NaN at a bad pose."""
     if isinstance(value, tuple):
         return tuple(_at_one_pose(item, good) for item in value)
-    plain: Any = float(value) if np.ndim(value) == 0 and isinstance(value, int | np.ndarray | np.generic) else value
+    plain: Any = float(value) if isinstance(value, int | np.ndarray | np.generic) and np.ndim(value) == 0 else value
     return plain if good else plain * math.nan
 
 
