@@ -10,12 +10,13 @@ import attrs
 import numpy as np
 from numpy.typing import NDArray
 
+from springpoise.balance.amounts import solved_shares
 from springpoise.balance.place_knobs import Knob
 from springpoise.balance.place_limits import Rules, limits_of
 from springpoise.balance.place_problem import built
 from springpoise.balance.place_search import BAD, SAMPLES, Ended, spread_starts
 from springpoise.balance.place_shares import MountShares, with_shares
-from springpoise.errors import InputError
+from springpoise.errors import InputError, NoSolution
 from springpoise.mechanism import Mechanism
 
 __all__ = ["Plain"]
@@ -137,17 +138,8 @@ class Plain:
 
 
 def _solved(matrix: Array, goal: Array, norm: str) -> Array:
-    """Shares, none of them negative, that bring ``matrix @ shares`` closest to ``goal``."""
-    import scipy.optimize
-
-    if norm == "rms":
-        return np.asarray(scipy.optimize.nnls(matrix, goal, maxiter=1000)[0])
-    ones = np.ones((goal.size, 1))
-    found = scipy.optimize.linprog(
-        np.append(np.zeros(matrix.shape[1]), 1.0),
-        A_ub=np.block([[matrix, -ones], [-matrix, -ones]]),
-        b_ub=np.concatenate([goal, -goal]),
-        method="highs-ds",
-        options={"primal_feasibility_tolerance": 1e-10, "dual_feasibility_tolerance": 1e-10},
-    )
-    return np.zeros(matrix.shape[1]) if found.x is None else np.asarray(found.x[:-1])
+    """Shares, none of them negative, that bring ``matrix @ shares`` closest to ``goal``; none where that has no end."""
+    try:
+        return solved_shares(matrix, goal, norm)
+    except NoSolution:
+        return np.zeros(matrix.shape[1])
