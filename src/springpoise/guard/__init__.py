@@ -9,8 +9,14 @@ schema = 1        version of the format
 title, description
 [gravity]         latitude and height, or magnitude, or components; tilt. Standard gravity without.
 [arm]             Arm: length; [[arm.bodies]] Body: name, mass, com
-[travel]          from, to. A full turn without.
-[friction]        Friction: coulomb, pivot_friction, pivot_radius
+[linkage]         in place of [arm]. kind = "planar chain" ([[linkage.chain]] Link), "planar linkage"
+                  ([[linkage.parts]], kind = "link", "dyad" or "slider dyad"), "four bar", "five bar" or
+                  "spatial chain" ([[linkage.links]] SpatialLink), and the fields of that class; a joint
+                  that follows others has follows = { ratios = { NAME = ratio }, offset }. Or kind = "urdf":
+                  file, a URDF file beside this one, whose limits are the travel where none is stated.
+[travel]          from, to. A full turn without. Of several joints [[travel]], a table for each; an
+                  empty one for a full turn.
+[friction]        Friction: coulomb, pivot_friction, pivot_radius. [[friction]] for each joint another.
 [[springs]]       SpringMount: name, count, rigid_length, moving_mass
 [springs.spring]  kind = "extension", "zero length", "compression", "torsion", "constant force",
                   "gas spring", "rubber tube", "strip spring", "torque curve", "in parallel",
@@ -22,14 +28,16 @@ title, description
                   "extension coil", "compression coil", "torsion coil", "strip", "spiral": the fields
                   of the part, its wire by name, and how it is used (see spring_of).
 [springs.path]    kind = "straight": first, last. "cable": along = [point, disc or point ..., point].
-                  "joint travel": joint, ratio. A point is { body = "ground", at = ["0 m", "0.2 m"] },
+                  "joint travel": joint, ratio. "spool": angles, moment_radii, joint. A point is { body = "ground", at = ["0 m", "0.2 m"] },
                   a disc { centre = {a point}, radius = "15 mm", turn = "cw" } with its friction.
 [[service]]       Service: what springs need to be judged warm or cold; spring names one of them
 [[payloads]]      Payload: name, mass, at; none of them is on the arm until a limit names it
-[actuator]        Actuator: ratio, efficiency, sign, zero; [actuator.motor] Motor
+[actuator]        Actuator: ratio, efficiency, sign, zero; [actuator.motor] Motor. [[actuator]] for
+                  each joint another.
 [[limits]]        what = "residual torque", "holding torque", "stretch", "stored energy",
                   "balance angles", "motor current", "pivot load", "yield margin", "fatigue margin",
-                  "buckling margin" or "service temperature", and the fields of that class
+                  "buckling margin" or "service temperature", and the fields of that class. Of several
+                  joints the worst counts, or the one that joint names; over is a range for each.
 [design]          method = "stock", "sine" or "fit", and the fields of that class. With "fit", what is
                   to be found is written "open" in the springs: rate or pull, and either
                   initial_tension and free_angle, or rigid_length.
@@ -41,6 +49,7 @@ from springpoise.guard.check import CheckReport, check
 from springpoise.guard.compare import Change, Comparison, compare
 from springpoise.guard.document import Payload, PoiseFile
 from springpoise.guard.files import dump, load, save
+from springpoise.guard.joints import JointPose, JointRanges
 from springpoise.guard.limits import (
     BalanceAngles,
     HoldingTorque,
@@ -71,6 +80,8 @@ __all__ = [
     "FatigueMargin",
     "FitRequest",
     "HoldingTorque",
+    "JointPose",
+    "JointRanges",
     "Limit",
     "LimitVerdict",
     "MotorCurrent",

@@ -14,6 +14,7 @@ from springpoise.errors import InputError, InputTypeError, PoiseFileError, Sprin
 from springpoise.guard.amounts import celsius, shown
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.files import load
+from springpoise.guard.joints import poses_over, shown_pose
 from springpoise.guard.limits import Limit
 from springpoise.guard.service import at_temperature, service_of
 from springpoise.guard.verdict import Case, LimitVerdict
@@ -22,9 +23,6 @@ from springpoise.springs import SpringWarning
 from springpoise.tables import grid
 
 __all__ = ["CheckReport", "check", "document_at", "judge"]
-
-POSES = 361
-"""How many evenly spaced poses each limit is judged at."""
 
 
 @attrs.frozen
@@ -85,12 +83,12 @@ def table_of(verdicts: tuple[LimitVerdict, ...]) -> str:
         header,
         [
             (
-                verdict.what,
+                f"{verdict.what} of {verdict.joint}" if verdict.joint else verdict.what,
                 "holds" if verdict.holds else "FAILS",
                 shown(verdict.value, verdict.unit),
                 shown(verdict.allowed, verdict.unit),
                 shown(verdict.margin, verdict.unit, 3),
-                "" if verdict.at is None else shown(verdict.at, "rad"),
+                "" if verdict.at is None else shown_pose(verdict.at),
                 verdict.payload or "",
                 *(("" if verdict.temperature is None else celsius(verdict.temperature),) if warm else ()),
             )
@@ -101,6 +99,9 @@ def table_of(verdicts: tuple[LimitVerdict, ...]) -> str:
 
 def check(document: PoiseFile | str | os.PathLike[str]) -> CheckReport:
     """Judge every limit of a mechanism file.
+
+    A mechanism with one joint is judged at 361 evenly spaced poses; one with several at 4096 poses
+    spread evenly through the box of its travels and, up to ten joints, at the corners of that box.
 
     Parameters
     ----------
@@ -150,7 +151,12 @@ def document_at(document: PoiseFile | str | os.PathLike[str]) -> PoiseFile:
 
 def judge(document: PoiseFile) -> CheckReport:
     """The verdicts on a document's limits, whatever it leaves open, and what is unwise about its springs."""
+    kind = InputError if document.path is None else PoiseFileError
     verdicts = []
+    try:
+        _ = document.mechanism.travel_or_turn
+    except InputError as error:
+        raise kind(f"{document.called}: travel: {error}") from error
     with warnings.catch_warnings(record=True) as caught:
         warnings.simplefilter("always", SpringWarning)
         check_gas_mounts(document.mechanism, rod_at=lambda name: service_of(document.service, name).rod)
@@ -160,7 +166,6 @@ def judge(document: PoiseFile) -> CheckReport:
             except PoiseFileError:
                 raise
             except SpringpoiseError as error:
-                kind = InputError if document.path is None else PoiseFileError
                 raise kind(f"{document.called}: limits[{i + 1}]: {error}") from error
     said = []
     for one in caught:
@@ -174,8 +179,7 @@ def judge(document: PoiseFile) -> CheckReport:
 def _worst(document: PoiseFile, limit: Limit) -> LimitVerdict:
     """The verdict on a limit, at the worst of its temperatures."""
     loaded = document.with_payload(limit.payload)
-    low, high = loaded.travel_or_turn if limit.over is None else limit.over
-    poses = np.linspace(low, high, POSES)
+    poses = poses_over(loaded, limit.over)
     verdicts = []
     for temperature in limit.at_temperature or (None,):
         mechanism = loaded

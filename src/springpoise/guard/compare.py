@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-import math
+import contextlib
 import os
 from typing import Any
 
@@ -10,13 +10,23 @@ import attrs
 import numpy as np
 from numpy.typing import NDArray
 
-from springpoise.balance import residual
 from springpoise.errors import InputError
 from springpoise.guard.amounts import JSON_SUFFIX, finite_or_none, percent, shown
-from springpoise.guard.check import POSES, document_at
+from springpoise.guard.check import document_at
 from springpoise.guard.document import PoiseFile
+from springpoise.guard.joints import (
+    JointPose,
+    JointRanges,
+    Pose,
+    force_unit,
+    joint_names,
+    pose_at,
+    poses_over,
+    shown_pose,
+)
 from springpoise.guard.limits import coordinate_unit
 from springpoise.mechanism import Mechanism
+from springpoise.mechanism.travel import joint_units_of
 from springpoise.tables import grid
 
 __all__ = ["Change", "Comparison", "compare"]
@@ -61,20 +71,24 @@ class Comparison:
     """What the old version is called."""
     new: str
     """What the new version is called."""
-    poses: tuple[float, float]
-    """The poses that both can reach (from, to) [rad]."""
+    poses: tuple[float, float] | JointRanges
+    """The poses that both can reach (from, to) [rad]; a range each for several joints."""
     payload: str | None
     """Payload that was on both; None for none."""
     changes: tuple[Change, ...]
     """All quantities, those that are the same included."""
     old_balance: str
-    """Where the old version stands still by itself."""
+    """Where the old version stands still by itself; empty for several joints."""
     new_balance: str
-    """Where the new version stands still by itself."""
+    """Where the new version stands still by itself; empty for several joints."""
     shift: float
-    """Greatest magnitude of the difference of both holding torques [N·m]."""
-    shift_at: float
-    """Pose where it occurs [rad]."""
+    """Greatest magnitude of the difference of both holding torques [N·m, or N where the joint slides]."""
+    shift_at: Pose
+    """Pose where it occurs [rad], or of several joints."""
+    shift_joint: str = ""
+    """Joint whose torque it is, where there are several."""
+    shift_unit: str = "N*m"
+    """Its unit."""
 
     @property
     def changed(self) -> tuple[Change, ...]:
@@ -86,15 +100,24 @@ class Comparison:
         return {
             "old": self.old,
             "new": self.new,
-            "from_rad": self.poses[0],
-            "to_rad": self.poses[1],
+            **self._range_dict(),
             "payload": self.payload,
             "changes": [change.to_dict() for change in self.changes],
             "old_balance": self.old_balance,
             "new_balance": self.new_balance,
-            "shift_Nm": finite_or_none(self.shift),
-            "shift_at_rad": self.shift_at,
+            f"shift{JSON_SUFFIX[self.shift_unit]}": finite_or_none(self.shift),
+            **(
+                {"shift_at": self.shift_at.to_dict(), "shift_joint": self.shift_joint}
+                if isinstance(self.shift_at, JointPose)
+                else {"shift_at_rad": self.shift_at}
+            ),
         }
+
+    def _range_dict(self) -> dict[str, Any]:
+        if not isinstance(self.poses, JointRanges):
+            return {"from_rad": self.poses[0], "to_rad": self.poses[1]}
+        each = zip(self.poses.ranges, self.poses.units, strict=True)
+        return {"ranges": [{f"from{JSON_SUFFIX[u]}": pair[0], f"to{JSON_SUFFIX[u]}": pair[1]} for pair, u in each]}
 
     def __str__(self) -> str:
         def cell(change: Change, value: float | None) -> str:
@@ -107,15 +130,24 @@ class Comparison:
             (change.what, cell(change, change.old), cell(change, change.new), cell(change, change.difference))
             for change in self.changes
         ]
+        of = f" of {self.shift_joint}" if self.shift_joint else ""
+        balance = [f"  old: {self.old_balance}", f"  new: {self.new_balance}"] if self.old_balance else []
         return "\n".join(
             [
-                f"{self.old} and {self.new}, {shown(self.poses[0], 'rad')} to {shown(self.poses[1], 'rad')}{load}",
+                f"{self.old} and {self.new}, {_shown_ranges(self.poses)}{load}",
                 grid(("", "old", "new", "difference"), rows),
-                f"  old: {self.old_balance}",
-                f"  new: {self.new_balance}",
-                f"  holding torque moved by at most {shown(self.shift, 'N*m')}, at {shown(self.shift_at, 'rad')}",
+                *balance,
+                f"  holding torque{of} moved by at most {shown(self.shift, self.shift_unit)}, "
+                f"at {shown_pose(self.shift_at)}",
             ]
         )
+
+
+def _shown_ranges(poses: Any) -> str:
+    if not isinstance(poses, JointRanges):
+        return f"{shown(poses[0], 'rad')} to {shown(poses[1], 'rad')}"
+    each = zip(poses.ranges, poses.units, strict=True)
+    return ", ".join(f"{shown(low, unit)} to {shown(high, unit)}" for (low, high), unit in each)
 
 
 def compare(
@@ -154,20 +186,18 @@ def compare(
         if document.open_springs:
             raise InputError(f"{document.called}: must be complete to be compared, got springs that are left open")
     a, b = (document.with_payload(payload) for document in documents)
-    low = max(a.travel_or_turn[0], b.travel_or_turn[0])
-    high = min(a.travel_or_turn[1], b.travel_or_turn[1])
-    if not low < high:
-        raise InputError(
-            f"old and new must have poses in common, got {shown(a.travel_or_turn[0], 'rad')} to "
-            f"{shown(a.travel_or_turn[1], 'rad')} and {shown(b.travel_or_turn[0], 'rad')} to "
-            f"{shown(b.travel_or_turn[1], 'rad')}"
-        )
-    a, b = (attrs.evolve(mechanism, travel=(low, high)) for mechanism in (a, b))
-    q = np.linspace(low, high, POSES)
+    joints = joint_names(a.linkage)
+    common = _common(a, b)
+    single = not isinstance(common, JointRanges)
+    a, b = (
+        attrs.evolve(mechanism, travel=common.ranges if isinstance(common, JointRanges) else common)
+        for mechanism in (a, b)
+    )
+    q = poses_over(a)
     with np.errstate(all="ignore"):
         ours, theirs = _figures(a, q), _figures(b, q)
-        shift = np.abs(b.holding_torque(q) - a.holding_torque(q))
-    at = int(np.argmax(shift))
+        moved = np.abs(b.holding_torque(q) - a.holding_torque(q)).reshape(len(q), len(joints))
+    at, joint = np.unravel_index(int(np.argmax(moved)), moved.shape)
     names = [*ours, *(name for name in theirs if name not in ours)]
     changes = []
     for name in names:
@@ -177,35 +207,70 @@ def compare(
     return Comparison(
         old=documents[0].called,
         new=documents[1].called,
-        poses=(low, high),
+        poses=common,
         payload=payload,
         changes=tuple(changes),
-        old_balance=str(a.equilibria()),
-        new_balance=str(b.equilibria()),
-        shift=float(shift[at]),
-        shift_at=float(q[at]),
+        old_balance=str(a.equilibria()) if single else "",
+        new_balance=str(b.equilibria()) if single else "",
+        shift=float(moved[at, joint]),
+        shift_at=pose_at(a, q, int(at)),
+        shift_joint=joints[joint] if len(joints) > 1 else "",
+        shift_unit=force_unit(joint_units_of(a.linkage)[joint]),
     )
+
+
+def _common(a: Mechanism, b: Mechanism) -> Any:
+    """The poses that both can reach: a range of angles, or a range for each joint."""
+    names, kinds = joint_names(a.linkage), joint_units_of(a.linkage)
+    if (names, kinds) != (joint_names(b.linkage), joint_units_of(b.linkage)):
+        raise InputError(
+            f"old and new must have the same joints, got {', '.join(names)} and {', '.join(joint_names(b.linkage))}"
+        )
+    one = len(names) == 1
+    both = [(m.travel_or_turn,) if one else m.travel_or_turn for m in (a, b)]
+    ranges = []
+    for name, unit, mine, other in zip(names, kinds, *both, strict=True):
+        low, high = max(mine[0], other[0]), min(mine[1], other[1])
+        if not low < high:
+            of = "" if one else f" of {name}"
+            raise InputError(
+                f"old and new must have poses{of} in common, got {shown(mine[0], unit)} to {shown(mine[1], unit)} and "
+                f"{shown(other[0], unit)} to {shown(other[1], unit)}"
+            )
+        ranges.append((low, high))
+    return ranges[0] if kinds == ("rad",) else JointRanges(tuple(ranges), kinds)
 
 
 def _figures(mechanism: Mechanism, q: NDArray[np.float64]) -> dict[str, tuple[float | None, str]]:
     """What is compared: value and unit by name."""
-    left = residual(mechanism, q)
-
-    def most(values: Any) -> float:
-        return float(np.max(values))
-
-    share = left.worst_fraction
-    found: dict[str, tuple[float | None, str]] = {
-        "residual torque, worst": (left.worst, "N*m"),
-        "residual torque, rms": (left.rms, "N*m"),
-        "residual torque, worst of peak": (None if math.isnan(share) else share, "1"),
-        "peak gravity torque": (left.peak_gravity_torque, "N*m"),
-        "friction band": (most(mechanism.friction_band(q)), "N*m"),
-        "stored energy": (most(mechanism.spring_energy(q)), "J"),
-        "pivot load": (most(mechanism.pivot_load(q)), "N"),
-    }
+    joints = joint_names(mechanism.linkage)
+    found: dict[str, tuple[float | None, str]] = {}
+    torques, gravity, bands = (
+        np.abs(np.broadcast_to(values, q.shape)).reshape(len(q), len(joints))
+        for values in (mechanism.holding_torque(q), mechanism.gravity_torque(q), mechanism.friction_band(q))
+    )
+    for i, unit in enumerate(map(force_unit, joint_units_of(mechanism.linkage))):
+        of = f" of {joints[i]}" if len(joints) > 1 else ""
+        worst, peak = _most(torques[:, i]), _most(gravity[:, i])
+        found |= {
+            f"residual torque{of}, worst": (worst, unit),
+            f"residual torque{of}, rms": (float(np.sqrt(np.mean(torques[:, i] ** 2))), unit),
+            f"residual torque{of}, worst of peak": (worst / peak if peak > 0 else None, "1"),
+            f"peak gravity torque{of}": (peak, unit),
+            f"friction band{of}": (_most(bands[:, i]), unit),
+        }
+    found["stored energy"] = (_most(mechanism.spring_energy(q)), "J")
+    pivots: tuple[str, ...] = tuple(getattr(mechanism.linkage, "pivots", ("",)))
+    with contextlib.suppress(InputError):  # linkages in space and spools do not know where their cables press
+        loads = np.asarray(mechanism.pivot_load(q)).reshape(len(q), len(pivots))
+        for i, name in enumerate(pivots):
+            found["pivot load" + (f" of {name}" if len(pivots) > 1 else "")] = (_most(loads[:, i]), "N")
     for state, mount in zip(mechanism.spring_states(q), mechanism.springs, strict=True):
         unit = coordinate_unit(mount)
         found[f"{state.name}: stretch margin"] = (float(np.min(state.margin)), unit)
-        found[f"{state.name}: load of one"] = (most(np.abs(state.load)), "N" if unit == "m" else "N*m")
+        found[f"{state.name}: load of one"] = (_most(np.abs(state.load)), "N" if unit == "m" else "N*m")
     return found
+
+
+def _most(values: Any) -> float:
+    return float(np.max(values))

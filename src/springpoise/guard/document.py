@@ -10,7 +10,8 @@ import attrs
 from springpoise import units
 from springpoise.errors import InputError, InputTypeError
 from springpoise.feedforward import Actuator
-from springpoise.guard.limits import Limit
+from springpoise.guard.joints import JointRanges, joint_names
+from springpoise.guard.limits import JointLimit, Limit
 from springpoise.guard.openings import OpenSpring
 from springpoise.guard.place import nearest
 from springpoise.guard.requests import DesignRequest
@@ -59,6 +60,34 @@ def _all_of(value: Any, cls: type, name: str) -> None:
         raise InputTypeError(f"PoiseFile.{name} must be a sequence of {cls.__name__}, got {value!r}")
 
 
+def check_joints(linkage: Any, limits: tuple[Limit, ...], *, designed: bool) -> None:
+    """Whether limits and design fit the joints of a linkage.
+
+    Raises
+    ------
+    InputError
+        A joint that is not there, another number of ranges than joints, or what only one joint can have.
+    """
+    names = joint_names(linkage)
+    several = f"{len(names)} ({', '.join(names)})"
+    if designed and len(names) != 1:
+        raise InputError(f"design is for mechanisms with one joint, as its solvers are, got {several}")
+    for i, limit in enumerate(limits):
+        where = f"limits[{i + 1}]"
+        if limit.what == "balance angles" and len(names) != 1:
+            raise InputError(f"{where}.what is {limit.what!r}, which is for mechanisms with one joint, got {several}")
+        if isinstance(limit.over, JointRanges):
+            limit.over.fit(linkage, f"{where}.over")
+        elif limit.over is not None and len(names) != 1:
+            raise InputError(f"{where}.over must be a range for each of {len(names)} joints, got {limit.over}")
+        if isinstance(limit, JointLimit) and limit.joint is not None:
+            known = limit.names(linkage)
+            if limit.joint not in known:
+                raise InputError(
+                    f"{where}.joint must be the name of a joint, got {limit.joint!r}{nearest(limit.joint, known)}"
+                )
+
+
 @attrs.frozen(kw_only=True)
 class PoiseFile:
     """What a ``.poise.toml`` file says.
@@ -91,8 +120,8 @@ class PoiseFile:
     """One line on what it is."""
     description: str = ""
     """More on what it is."""
-    actuator: Actuator | None = None
-    """Motor and gear; None for not given."""
+    actuator: Actuator | tuple[Actuator, ...] | None = attrs.field(default=None, converter=_tuple)
+    """Motor and gear of the joint, or of every joint alike; or one for each joint; None for not given."""
     service: tuple[Service, ...] = attrs.field(default=(), converter=_tuple)
     """What is known of springs in service: how they change with temperature, how warm they may become."""
     payloads: tuple[Payload, ...] = attrs.field(default=(), converter=_tuple)
@@ -114,7 +143,15 @@ class PoiseFile:
         _kind(self.mechanism, Mechanism, "mechanism")
         _kind(self.title, str, "title")
         _kind(self.description, str, "description")
-        if self.actuator is not None:
+        linkage = self.mechanism.linkage
+        joints = joint_names(linkage)
+        if isinstance(self.actuator, tuple):
+            _all_of(self.actuator, Actuator, "actuator")
+            if len(self.actuator) != len(joints):
+                raise InputError(
+                    f"actuator must be one for each of {len(joints)} joints ({', '.join(joints)}), got {len(self.actuator)}"
+                )
+        elif self.actuator is not None:
             _kind(self.actuator, Actuator, "actuator")
         if self.design is not None:
             _kind(self.design, DesignRequest, "design")
@@ -138,7 +175,9 @@ class PoiseFile:
                 raise InputError(
                     f"{where}.payload must be the name of a payload, got {wanted!r}{nearest(wanted, names)}"
                 )
-        motor = self.actuator is not None and self.actuator.motor is not None
+        actuators = self.actuator if isinstance(self.actuator, tuple) else (self.actuator,)
+        motor = any(one is not None and one.motor is not None for one in actuators)
+        check_joints(linkage, self.limits, designed=self.design is not None)
         mounts = self.all_mounts
         called = [mount.name or f"spring {i + 1}" for i, mount in enumerate(mounts)]
         for i, service in enumerate(self.service):

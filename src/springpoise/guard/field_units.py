@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
+from typing import Any
 
-__all__ = ["FIELD_UNITS"]
+__all__ = ["FIELD_UNITS", "OWNER_UNITS", "joint_unit"]
 
 _LAWS = ("NeoHookean", "MooneyRivlin", "Yeoh", "Gent", "Ogden", "ArrudaBoyce")
 
@@ -20,5 +21,16 @@ FIELD_UNITS: Mapping[str, str] = {
     "LifeTable.pairs": "1",
     "ExtensionCoil.initial_tension": "N",
     "TorsionCoil.legs": "m",
+    "SpatialLink.axis": "1",
+    "SpatialLink.limits": "rad",
 }
 """Units by class and field."""
+
+
+def joint_unit(link: Any) -> str:
+    """Unit of the travel of a link's joint."""
+    return "m" if link.joint == "prismatic" else "rad"
+
+
+OWNER_UNITS: Mapping[str, Callable[[Any], str]] = {"SpatialLink.limits": joint_unit}
+"""Units that depend on the object that has the field."""

@@ -17,6 +17,7 @@ from springpoise.guard.limits import coordinate_unit
 from springpoise.guard.models import kind_of
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
+from springpoise.paths import Drum
 from springpoise.springs.protocol import working_range_of
 
 __all__ = ["At", "HoldFigures", "PlaceFigures", "SpringFigures", "hold_figures", "rests_alone", "spring_figures"]
@@ -55,7 +56,7 @@ class PlaceFigures:
     """A point to drill, or the centre of a disc."""
 
     what: str
-    """What is there: anchor, attachment, guide, pulley, rod, spring end."""
+    """What is there: anchor, attachment, guide, pulley, rod, drum, spring end."""
     body: str
     """The body it is fixed in; coordinates are in its frame."""
     x: float
@@ -212,7 +213,7 @@ def _places(mount: SpringMount) -> Iterator[PlaceFigures]:
                 what = "spring end"
             yield PlaceFigures(what, element.body, float(element.at[0]), float(element.at[1]))
         else:
-            what = "rod" if element.sliding_friction else "pulley"
+            what = "drum" if isinstance(element, Drum) else "rod" if element.sliding_friction else "pulley"
             x, y = map(float, element.centre.at)
             yield PlaceFigures(what, element.centre.body, x, y, float(element.radius), element.turn)
 
@@ -234,7 +235,8 @@ def hold_figures(document: PoiseFile, q: Array) -> tuple[HoldFigures, ...]:
     return tuple(_hold(document.with_payload(name), document.actuator, name, q) for name in names)
 
 
-def _hold(mechanism: Mechanism, actuator: Actuator | None, payload: str | None, q: Array) -> HoldFigures:
+def _hold(mechanism: Mechanism, given: Any, payload: str | None, q: Array) -> HoldFigures:
+    actuator: Actuator | None = given[0] if isinstance(given, tuple) else given
     torque = np.abs(mechanism.holding_torque(q))
     currents: list[At | None] = [None, None]
     if actuator is not None and actuator.motor is not None:

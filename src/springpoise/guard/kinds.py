@@ -12,21 +12,22 @@ from springpoise.guard.limits import (
     StoredEnergy,
     Stretch,
 )
+from springpoise.guard.linkage_kinds import LINKAGES, MEMBERS
 from springpoise.guard.models import Family, Registry
 from springpoise.guard.part_limits import BucklingMargin, FatigueMargin, ServiceTemperature, YieldMargin
 from springpoise.guard.requests import DesignRequest, FitRequest, SineRequest, StockRequest
 from springpoise.guard.spring_kinds import ANGULAR, SPRING_FAMILIES, SPRINGS
 from springpoise.linkages import Arm
-from springpoise.paths import Cable, JointTravel, Straight
+from springpoise.paths import Cable, JointTravel, Spool, Straight
 from springpoise.paths.protocol import Path
 from springpoise.springs.protocol import Spring
 
-__all__ = ["ANGULAR_REGISTRY", "DESIGNS", "LIMITS", "LINKAGES", "PATHS", "REGISTRY", "SPRINGS"]
+__all__ = ["ANGULAR_REGISTRY", "DESIGNS", "LIMITS", "LINKAGE_TABLES", "PATHS", "REGISTRY", "SPRINGS"]
 
-LINKAGES: dict[str, type] = {"arm": Arm}
-"""Sections of which a file has exactly one, and the linkage that each describes."""
+LINKAGE_TABLES: dict[str, type | Family] = {"arm": Arm, "linkage": LINKAGES}
+"""Sections of which a file has exactly one, and the linkage, or the kinds of linkages, that each describes."""
 
-PATHS = Family("kind", "path", {"straight": Straight, "cable": Cable, "joint travel": JointTravel})
+PATHS = Family("kind", "path", {"straight": Straight, "cable": Cable, "joint travel": JointTravel, "spool": Spool})
 
 LIMITS = Family(
     "what",
@@ -51,7 +52,7 @@ LIMITS = Family(
 
 DESIGNS = Family("method", "design", {cls.method: cls for cls in (StockRequest, SineRequest, FitRequest)})
 
-REGISTRY: Registry = {**SPRING_FAMILIES, Path: PATHS, Limit: LIMITS, DesignRequest: DESIGNS}
+REGISTRY: Registry = {**SPRING_FAMILIES, **MEMBERS, Path: PATHS, Limit: LIMITS, DesignRequest: DESIGNS}
 """The family for each type of a field that says only what it is for."""
 
 ANGULAR_REGISTRY: Registry = {**REGISTRY, Spring: ANGULAR}

@@ -15,7 +15,9 @@ from springpoise import units
 from springpoise.errors import InputError, InputTypeError, UnitError
 from springpoise.feedforward import Feedforward
 from springpoise.guard.amounts import OfPeak, percent, shown, text_of_torque_or_share, torque_or_share, written
-from springpoise.guard.place import nearest
+from springpoise.guard.joints import JointRanges, force_unit, joint_names, over_of, text_of_over
+from springpoise.guard.models import leaves
+from springpoise.guard.place import Place, nearest
 from springpoise.guard.verdict import Case, LimitVerdict, broken, greatest, judged, least
 from springpoise.mechanism import SpringMount
 from springpoise.paths import JointTravel
@@ -33,14 +35,21 @@ __all__ = [
 ]
 
 
+UNLOADED = 1e-9
+"""A joint with less than this part of the greatest peak gravity torque is one that gravity does not load [1]."""
+
+
 def coordinate_unit(mount: SpringMount) -> str:
     """Unit of the mount's spring length: ``"m"``, or ``"rad"`` for a spring that follows a joint's angle."""
     return "rad" if isinstance(mount.path, JointTravel) else "m"
 
 
-def _rising(instance: Any, attribute: attrs.Attribute[Any], value: Any) -> None:
-    if value is not None and not value[0] < value[1]:
-        raise InputError(f"{type(instance).__name__}.{attribute.name} must be (lower, higher) rad, got {value}")
+def _read_over(value: Any, place: Place) -> Any:
+    """What stands under ``over``: two texts, or two for each joint."""
+    entries = place.entries(value)
+    if entries and all(isinstance(item, list) for _, item in entries):
+        return [leaves(tuple[float, float], "rad", item, at) for at, item in entries]
+    return leaves(tuple[float, float], "rad", value, place)
 
 
 def _temperatures(value: Any) -> Any:
@@ -66,10 +75,10 @@ class Limit:
     what: ClassVar[str]
     """How a file names the limit."""
 
-    over: tuple[float, float] | None = attrs.field(
-        default=None, converter=units.optional_radian_pair, validator=_rising
+    over: tuple[float, float] | JointRanges | None = attrs.field(
+        default=None, converter=over_of, metadata={"read": _read_over, "write": text_of_over}
     )
-    """Range of poses that is judged (from, to) [rad]; None for the travel."""
+    """Range of poses that is judged (from, to) [rad]; for several joints a range each [rad, or m]; None for the travel."""
     payload: str | None = None
     """Name of the payload that is on the mechanism; None for none."""
     at_temperature: tuple[float, ...] | None = attrs.field(
@@ -82,6 +91,50 @@ class Limit:
         raise NotImplementedError
 
 
+@attrs.frozen(kw_only=True, field_transformer=units.named_fields)
+class JointLimit(Limit):
+    """What limits of one joint, or of the worst of several, share."""
+
+    joint: str | None = None
+    """Name of the joint that is judged, as its link is called; None for the worst of all."""
+
+    def names(self, linkage: Any) -> tuple[str, ...]:
+        """What ``joint`` may name."""
+        return joint_names(linkage)
+
+    def chosen(self, case: Case) -> list[int]:
+        """Which joints are judged."""
+        names = self.names(case.mechanism.linkage)
+        return [i for i, name in enumerate(names) if self.joint in (None, name)]
+
+    def called(self, case: Case, index: int) -> str:
+        """The joint's name where there are several."""
+        names = self.names(case.mechanism.linkage)
+        return names[index] if len(names) > 1 else ""
+
+    def worst(self, case: Case, values: list[Any], allowed: float, unit: str) -> LimitVerdict:
+        """The verdict on the greatest value of the joints that are judged."""
+        found = [(*greatest(values[i], case), self.called(case, i)) for i in self.chosen(case)]
+        value, at, joint = max(found, key=lambda one: math.inf if math.isnan(one[0]) else one[0])
+        return judged(case, self.what, value, allowed, unit, at, joint=joint)
+
+    def turning(self, case: Case) -> None:
+        """Refuses joints that slide: a torque says nothing of them.
+
+        Raises
+        ------
+        InputError
+            A joint that is judged slides.
+        """
+        for i in self.chosen(case):
+            name, unit = case.joints[i]
+            if unit == "m":
+                raise InputError(
+                    f"at_most must be a share of the peak gravity torque, or joint the name of a joint that turns, "
+                    f"got a torque for {name!r}, which slides"
+                )
+
+
 def _norm(value: Any) -> str:
     if value not in ("worst", "rms"):
         raise InputError(f"ResidualTorque.norm must be 'worst' or 'rms', got {value!r}")
@@ -89,7 +142,7 @@ def _norm(value: Any) -> str:
 
 
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)
-class ResidualTorque(Limit):
+class ResidualTorque(JointLimit):
     """The holding torque that gravity and springs leave, without friction, is at most so much."""
 
     what: ClassVar[str] = "residual torque"
@@ -101,8 +154,20 @@ class ResidualTorque(Limit):
 
     def judge(self, case: Case) -> LimitVerdict:
         """The verdict on a case."""
-        torque = np.abs(np.broadcast_to(case.mechanism.holding_torque(case.poses), case.poses.shape))
-        gravity, _ = greatest(np.abs(case.mechanism.gravity_torque(case.poses)), case)
+        share = isinstance(self.at_most, OfPeak)
+        if not share:
+            self.turning(case)
+        mechanism, q, count = case.mechanism, case.poses, len(case.joints)
+        torques = case.columns(np.abs(mechanism.holding_torque(q)), count)
+        gravity = [greatest(one, case)[0] for one in case.columns(np.abs(mechanism.gravity_torque(q)), count)]
+        joints = self.chosen(case)
+        if share and len(joints) > 1:  # a joint that neither gravity nor a spring loads has no share of anything
+            least_load = UNLOADED * max(gravity)
+            joints = [i for i in joints if not max(gravity[i], np.max(torques[i])) <= least_load] or joints
+        found = [(self._of_joint(case, i, torques[i], gravity[i]), gravity[i] if share else 1.0) for i in joints]
+        return min(found, key=lambda one: _urgency(*one))[0]
+
+    def _of_joint(self, case: Case, index: int, torque: Any, gravity: float) -> LimitVerdict:
         allowed = self.at_most.share * gravity if isinstance(self.at_most, OfPeak) else self.at_most
         worst, at = greatest(torque, case)
         value = worst if self.norm == "worst" or math.isnan(worst) else float(np.sqrt(np.mean(torque**2)))
@@ -113,11 +178,19 @@ class ResidualTorque(Limit):
                 share = f"{share[:-1]}, where {self.at_most} is allowed)"
         place = at if self.norm == "worst" or math.isnan(value) else None
         subject = f"{self.what} (root mean square)" if self.norm == "rms" else ""
-        return judged(case, self.what, value, allowed, "N*m", place, subject=subject, also=share)
+        unit, joint = force_unit(case.joints[index][1]), self.called(case, index)
+        return judged(case, self.what, value, allowed, unit, place, joint=joint, subject=subject, also=share)
+
+
+def _urgency(verdict: LimitVerdict, scale: float) -> float:
+    """What the worst of several joints has least of: margin, in parts of what it is compared with."""
+    if math.isnan(verdict.margin):
+        return -math.inf
+    return verdict.margin / scale if scale > 0 else -math.inf if verdict.margin < 0 else 0.0
 
 
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)
-class HoldingTorque(Limit):
+class HoldingTorque(JointLimit):
     """The torque that holds the arm, or slowly moves it either way, friction included, is at most so much."""
 
     what: ClassVar[str] = "holding torque"
@@ -127,9 +200,10 @@ class HoldingTorque(Limit):
 
     def judge(self, case: Case) -> LimitVerdict:
         """The verdict on a case."""
+        self.turning(case)
         mechanism, q = case.mechanism, case.poses
-        value, at = greatest(np.abs(mechanism.holding_torque(q)) + mechanism.friction_band(q), case)
-        return judged(case, self.what, value, self.at_most, "N*m", at)
+        both = np.abs(mechanism.holding_torque(q)) + mechanism.friction_band(q)
+        return self.worst(case, case.columns(both, len(case.joints)), self.at_most, "N*m")
 
 
 def _length_or_angle(value: Any) -> tuple[float, str]:
@@ -221,7 +295,8 @@ class BalanceAngles(Limit):
 
     def judge(self, case: Case) -> LimitVerdict:
         """The verdict on a case."""
-        mechanism = case.mechanism if self.over is None else attrs.evolve(case.mechanism, travel=self.over)
+        over = self.over.ranges if isinstance(self.over, JointRanges) else self.over
+        mechanism = case.mechanism if over is None else attrs.evolve(case.mechanism, travel=over)
         if not np.all(np.isfinite(mechanism.holding_torque(case.poses))):
             _, at = greatest(mechanism.holding_torque(case.poses), case)
             return judged(case, self.what, math.nan, self.within, "rad", at)
@@ -240,7 +315,7 @@ class BalanceAngles(Limit):
 
 
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)
-class MotorCurrent(Limit):
+class MotorCurrent(JointLimit):
     """The motor's current that holds or slowly moves the arm either way is at most so much."""
 
     what: ClassVar[str] = "motor current"
@@ -250,16 +325,23 @@ class MotorCurrent(Limit):
 
     def judge(self, case: Case) -> LimitVerdict:
         """The verdict on a case."""
-        if case.actuator is None or case.actuator.motor is None:
+        actuators = () if case.actuator is None else Feedforward(case.mechanism, actuator=case.actuator).joint_actuators
+        if not any(actuators[i].motor for i in self.chosen(case) if actuators):
             return broken(case, self.what, self.at_most, "A", "there is no motor to judge")
-        ff = Feedforward(case.mechanism, actuator=case.actuator)
-        both = [np.abs(np.broadcast_to(ff.current(case.poses, moving=way), case.poses.shape)) for way in (1, -1)]
-        value, at = greatest(np.maximum(*both), case)
-        return judged(case, self.what, value, self.at_most, "A", at)
+        ff, q, count = Feedforward(case.mechanism), case.poses, len(case.joints)
+        both = [case.columns(ff.torque(q, moving=way), count) for way in (1, -1)]
+        currents = []
+        for i, actuator in enumerate(actuators):
+            ways = zip((1, -1), both, strict=True)
+            driven = (
+                [] if actuator.motor is None else [actuator.current(torques[i], moving=way) for way, torques in ways]
+            )
+            currents.append(np.max(np.abs(driven), axis=0) if driven else np.zeros(case.shape))
+        return self.worst(case, currents, self.at_most, "A")
 
 
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)
-class PivotLoad(Limit):
+class PivotLoad(JointLimit):
     """The pivot's bearing carries at most so much at rest."""
 
     what: ClassVar[str] = "pivot load"
@@ -267,7 +349,11 @@ class PivotLoad(Limit):
     at_most: float = attrs.field(converter=units.newton, validator=units.positive)
     """Greatest bearing force [N], > 0."""
 
+    def names(self, linkage: Any) -> tuple[str, ...]:
+        """The pivots."""
+        return tuple(getattr(linkage, "pivots", ("pivot",)))
+
     def judge(self, case: Case) -> LimitVerdict:
         """The verdict on a case."""
-        value, at = greatest(case.mechanism.pivot_load(case.poses), case)
-        return judged(case, self.what, value, self.at_most, "N", at)
+        loads = case.columns(case.mechanism.pivot_load(case.poses), len(self.names(case.mechanism.linkage)))
+        return self.worst(case, loads, self.at_most, "N")

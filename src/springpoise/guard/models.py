@@ -22,10 +22,22 @@ import numpy as np
 from springpoise import units
 from springpoise.errors import InputError, SpringpoiseError
 from springpoise.guard.amounts import written
-from springpoise.guard.field_units import FIELD_UNITS
+from springpoise.guard.couplings import COUPLINGS
+from springpoise.guard.field_units import FIELD_UNITS, OWNER_UNITS
 from springpoise.guard.place import Place, nearest
 
-__all__ = ["Family", "Form", "Registry", "fields_of", "kind_of", "read_kind", "read_model", "write_kind", "write_model"]
+__all__ = [
+    "Family",
+    "Form",
+    "Registry",
+    "fields_of",
+    "kind_of",
+    "leaves",
+    "read_kind",
+    "read_model",
+    "write_kind",
+    "write_model",
+]
 
 
 class Form(NamedTuple):
@@ -59,6 +71,7 @@ Registry: typing.TypeAlias = "Mapping[Any, Family]"
 
 
 class _Field(NamedTuple):
+    owner: str
     key: str
     attribute: attrs.Attribute[Any]
     hints: tuple[Any, ...]
@@ -83,6 +96,7 @@ def _fields_of(cls: Any) -> tuple[_Field, ...]:
         options = typing.get_args(hint) if union else (hint,)
         found.append(
             _Field(
+                owner=cls.__name__,
                 key=attribute.metadata.get("key", attribute.name),
                 attribute=attribute,
                 hints=tuple(option for option in options if option is not type(None)),
@@ -181,6 +195,10 @@ def _at_field(
 
 
 def _read(field: _Field, value: Any, place: Place, registry: Registry) -> Any:
+    if "read" in field.attribute.metadata:
+        return field.attribute.metadata["read"](value, place)
+    if _called(field) in COUPLINGS:
+        return COUPLINGS[_called(field)].read(value, place)
     if "write" in field.attribute.metadata:  # the field reads its own text
         return _own_text(field, place.text(value), place)
     if field.unit is not None:
@@ -189,6 +207,10 @@ def _read(field: _Field, value: Any, place: Place, registry: Registry) -> Any:
     if others and all(attrs.has(option) for option in field.hints):
         return _one_of(field.hints, value, place, registry)
     return _plain(first, value, place, registry)
+
+
+def _called(field: _Field) -> str:
+    return f"{field.owner}.{field.attribute.name}"
 
 
 def _own_text(field: _Field, text: str, place: Place) -> Any:
@@ -201,14 +223,15 @@ def _own_text(field: _Field, text: str, place: Place) -> Any:
 
 def _amount(field: _Field, value: Any, place: Place) -> Any:
     """A value with a unit as the texts that the model's own converter reads, or as a plain number."""
-    return _leaves(next((hint for hint in field.hints if _is_list(hint)), None), field.unit, value, place)
+    return leaves(next((hint for hint in field.hints if _is_list(hint)), None), field.unit, value, place)
 
 
 def _is_list(hint: Any) -> bool:
     return typing.get_origin(hint) in {tuple, np.ndarray}
 
 
-def _leaves(hint: Any, unit: str | None, value: Any, place: Place) -> Any:
+def leaves(hint: Any, unit: str | None, value: Any, place: Place) -> Any:
+    """A text with a unit, or lists of them as the type says, unchanged but looked at."""
     if not _is_list(hint):
         _check_leaf(unit, value, place)
         return value
@@ -218,7 +241,7 @@ def _leaves(hint: Any, unit: str | None, value: Any, place: Place) -> Any:
         inner = (inner[0],) * len(entries)
     if len(entries) != len(inner):
         raise place.error(f"must be a list of {len(inner)} values, got {len(entries)}: {Place.shown(value)}")
-    return tuple(_leaves(one, unit, item, at) for one, (at, item) in zip(inner, entries, strict=True))
+    return tuple(leaves(one, unit, item, at) for one, (at, item) in zip(inner, entries, strict=True))
 
 
 def _check_leaf(unit: str | None, value: Any, place: Place) -> None:
@@ -237,7 +260,7 @@ def _plain(hint: Any, value: Any, place: Place, registry: Registry) -> Any:
         return read_model(hint, value, place, registry)
     if typing.get_origin(hint) is tuple:
         inner, *_ = typing.get_args(hint)
-        options = typing.get_args(inner)
+        options = () if inner in registry else typing.get_args(inner)
         if options and all(attrs.has(option) for option in options):
             return tuple(_one_of(options, item, at, registry) for at, item in place.entries(value))
         return tuple(_plain(inner, item, at, registry) for at, item in place.entries(value))
@@ -318,7 +341,7 @@ def write_model(model: Any, registry: Registry) -> dict[str, Any]:
             not field.required and units.comparable(value) == units.comparable(_default(field.attribute))
         ):
             continue
-        table[field.key] = _write(field, value, registry, f"{type(model).__name__}.{field.attribute.name}")
+        table[field.key] = _write(field, value, registry, model)
     return table
 
 
@@ -327,11 +350,15 @@ def _default(attribute: attrs.Attribute[Any]) -> Any:
     return default.factory() if hasattr(default, "factory") else default
 
 
-def _write(field: _Field, value: Any, registry: Registry, name: str) -> Any:
+def _write(field: _Field, value: Any, registry: Registry, model: Any) -> Any:
+    name = _called(field)
     if "write" in field.attribute.metadata:
         return field.attribute.metadata["write"](value)
+    if name in COUPLINGS:
+        return COUPLINGS[name].write(value, model)
     if field.unit is not None:
-        return _written(value, field.unit, name, any(_is_list(hint) for hint in field.hints))
+        unit = OWNER_UNITS[name](model) if name in OWNER_UNITS else field.unit
+        return _written(value, unit, name, any(_is_list(hint) for hint in field.hints))
     for hint, family in _families(field, registry):
         if isinstance(value, tuple) and typing.get_origin(hint) is tuple:
             return [write_kind(item, registry, family) for item in value]

@@ -13,6 +13,7 @@ from springpoise import units
 from springpoise.errors import InputError
 from springpoise.guard.amounts import celsius
 from springpoise.guard.inside import Inside, single_springs
+from springpoise.guard.joints import Pose
 from springpoise.guard.limits import Limit
 from springpoise.guard.part_springs import PartSpring, plain
 from springpoise.guard.place import nearest
@@ -39,7 +40,7 @@ class _Found(NamedTuple):
     factor: float
     name: str
     about: str
-    at: float | None
+    at: Pose | None
 
 
 def _singles(case: Case, only: str | None) -> Iterator[tuple[str, Inside]]:
@@ -48,7 +49,7 @@ def _singles(case: Case, only: str | None) -> Iterator[tuple[str, Inside]]:
     for i, mount in enumerate(mechanism.springs):
         name = mechanism.mount_name(i)
         if only in (None, name):
-            length = np.broadcast_to(mount.spring_length(mechanism.linkage, case.poses), case.poses.shape)
+            length = np.broadcast_to(mount.spring_length(mechanism.linkage, case.poses), case.shape)
             for inside in single_springs(mount.spring, length):
                 yield name, inside
 
@@ -99,7 +100,7 @@ class _PartLimit(Limit):
         for name, inside in _singles(case, self.spring):
             if isinstance(inside.spring, PartSpring):
                 loads = _own_loads(inside, name)
-                at = float(case.poses[int(np.argmax(np.where(np.isnan(loads), np.inf, loads)))])
+                at = case.pose(int(np.argmax(np.where(np.isnan(loads), np.inf, loads))))
                 factors = self._factors(inside.spring.part, inside, loads, name)
                 found += [_Found(factor, what, name, at) for what, factor in factors]
         if not found:

@@ -14,8 +14,10 @@ from springpoise.feedforward import Actuator
 from springpoise.gravity import STANDARD_GRAVITY, local, seen_from_base
 from springpoise.guard.amounts import written
 from springpoise.guard.document import Payload, PoiseFile
-from springpoise.guard.kinds import ANGULAR_REGISTRY, DESIGNS, LIMITS, LINKAGES, REGISTRY, SPRINGS
-from springpoise.guard.models import fields_of, read_kind, read_model, write_kind, write_model
+from springpoise.guard.joint_tables import each_or_all, each_or_all_tables, travel_of, travel_tables
+from springpoise.guard.kinds import ANGULAR_REGISTRY, DESIGNS, LIMITS, LINKAGE_TABLES, REGISTRY, SPRINGS
+from springpoise.guard.linkage_kinds import URDF
+from springpoise.guard.models import Family, fields_of, kind_of, read_kind, read_model, write_kind, write_model
 from springpoise.guard.openings import OPEN, ROOM, STAND_INS, OpenSpring
 from springpoise.guard.place import Place
 from springpoise.guard.service import Service
@@ -32,7 +34,7 @@ SECTIONS = (
     "title",
     "description",
     "gravity",
-    *LINKAGES,
+    *LINKAGE_TABLES,
     "travel",
     "friction",
     "springs",
@@ -43,7 +45,12 @@ SECTIONS = (
     "design",
 )
 
-STANDARD = (0.0, -STANDARD_GRAVITY)
+STANDARD = {2: (0.0, -STANDARD_GRAVITY), 3: (0.0, 0.0, -STANDARD_GRAVITY)}
+"""Gravity where a file says nothing, by the number of dimensions [m/s²]."""
+
+
+def _components(value: Any) -> Any:
+    return None if value is None else units.acceleration(value, "components")
 
 
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)
@@ -51,7 +58,7 @@ class _Gravity:
     latitude: float | None = attrs.field(default=None, converter=units.radian)
     height: float | None = attrs.field(default=None, converter=units.metre)
     magnitude: float | None = attrs.field(default=None, converter=units.metre_per_second_squared)
-    components: tuple[float, float] | None = attrs.field(default=None, converter=units.acceleration_pair)
+    components: tuple[float, ...] | None = attrs.field(default=None, converter=_components, metadata={"unit": "m/s**2"})
     tilt: float = attrs.field(default=0.0, converter=units.radian)
 
     def __attrs_post_init__(self) -> None:
@@ -63,24 +70,19 @@ class _Gravity:
         if self.components is not None and self.tilt != 0.0:
             raise InputError("must have either components or tilt, got both")
 
-    @property
-    def vector(self) -> tuple[float, float]:
+    def vector(self, dimensions: int) -> tuple[float, ...]:
         if self.components is not None:
+            if len(self.components) != dimensions:
+                raise InputError(f"components must be {dimensions} values for this linkage, got {len(self.components)}")
             return self.components
         magnitude = STANDARD_GRAVITY if self.magnitude is None else self.magnitude
         if self.latitude is not None:
             magnitude = local(self.latitude, 0.0 if self.height is None else self.height)
-        return seen_from_base(self.tilt, magnitude=magnitude)
-
-
-@attrs.frozen(kw_only=True, field_transformer=units.named_fields)
-class _Range:
-    first: float = attrs.field(converter=units.radian, metadata={"key": "from"})
-    last: float = attrs.field(converter=units.radian, metadata={"key": "to"})
-
-    def __attrs_post_init__(self) -> None:
-        if not self.first < self.last:
-            raise InputError(f"must run from the lower to the higher angle, got {self.first:g} to {self.last:g} rad")
+        if dimensions == 2:
+            return seen_from_base(self.tilt, magnitude=magnitude)
+        if self.tilt != 0.0:
+            raise InputError(f"tilt must be 0 rad for a linkage in space, got {self.tilt:g}; give components")
+        return 0.0, 0.0, -float(magnitude)
 
 
 # ------------------------------------------------------------------------------------------------
@@ -97,14 +99,11 @@ def document_of(tables: Mapping[str, Any], place: Place, *, path: Path | None, s
     """
     _check_schema(tables, place)
     place.check_keys(tables, SECTIONS)
-    linkages = [name for name in LINKAGES if name in tables]
-    if len(linkages) != 1:
-        raise place.error(f"must have one of the tables {', '.join(LINKAGES)}, got {' and '.join(linkages) or 'none'}")
+    linkage, from_urdf = _linkage(tables, place)
 
     def section(name: str, cls: type) -> Any:
-        return read_model(cls, tables[name], place.key(name), REGISTRY) if name in tables else None
+        return each_or_all(cls, tables[name], place.key(name), linkage, REGISTRY) if name in tables else None
 
-    linkage = read_model(LINKAGES[linkages[0]], tables[linkages[0]], place.key(linkages[0]), REGISTRY)
     mounts, opened = [], []
     for index, (at, table) in enumerate(place.key("springs").entries(tables.get("springs", []))):
         mount, fields = _mount(table, at)
@@ -116,10 +115,14 @@ def document_of(tables: Mapping[str, Any], place: Place, *, path: Path | None, s
             opened.append(OpenSpring(place=index, mount=mount, fields=fields))
         else:
             mounts.append(mount)
-    travel = section("travel", _Range)
-    gravity = section("gravity", _Gravity)
+    travel = travel_of(tables["travel"], place.key("travel"), linkage) if "travel" in tables else None
+    if from_urdf and "travel" not in tables:
+        travel = linkage.limits
+    dimensions = getattr(linkage, "dimensions", 2)
+    pull: tuple[float, ...] = STANDARD[dimensions]
     try:
-        pull = STANDARD if gravity is None else gravity.vector
+        if "gravity" in tables:
+            pull = read_model(_Gravity, tables["gravity"], place.key("gravity"), REGISTRY).vector(dimensions)
     except SpringpoiseError as error:
         raise place.key("gravity").failing(error) from error
     parts = {
@@ -145,7 +148,7 @@ def document_of(tables: Mapping[str, Any], place: Place, *, path: Path | None, s
             linkage,
             springs=mounts,
             friction=section("friction", Friction) or Friction(),
-            travel=None if travel is None else (travel.first, travel.last),
+            travel=travel,
             gravity=pull,
         )
         return PoiseFile(
@@ -153,6 +156,33 @@ def document_of(tables: Mapping[str, Any], place: Place, *, path: Path | None, s
         )
     except SpringpoiseError as error:
         raise place.failing(error) from error
+
+
+def _linkage(tables: Mapping[str, Any], place: Place) -> tuple[Any, bool]:
+    """The linkage, and whether it is a robot from a file of its own."""
+    names = [name for name in LINKAGE_TABLES if name in tables]
+    if len(names) != 1:
+        known = ", ".join(LINKAGE_TABLES)
+        raise place.error(f"must have one of the tables {known}, got {' and '.join(names) or 'none'}")
+    name, at = names[0], place.key(names[0])
+    found = LINKAGE_TABLES[name]
+    if not isinstance(found, Family):
+        return read_model(found, tables[name], at, REGISTRY), False
+    return read_kind(found, tables[name], at, REGISTRY), tables[name].get(found.key) == URDF
+
+
+def _linkage_table(linkage: Any) -> dict[str, Any]:
+    """The section that :func:`_linkage` reads back."""
+    for name, found in LINKAGE_TABLES.items():
+        if isinstance(found, Family):
+            if kind_of(found, linkage) is not None:
+                return {name: write_kind(linkage, REGISTRY, found)}
+        elif type(linkage) is found:
+            return {name: write_model(linkage, REGISTRY)}
+    known = [kind for found in LINKAGE_TABLES.values() for kind in (found.kinds if isinstance(found, Family) else ())]
+    raise InputError(
+        f"a {type(linkage).__name__} cannot be written to a file, only these linkages: {', '.join(['arm', *known])}"
+    )
 
 
 def _check_schema(tables: Mapping[str, Any], place: Place) -> None:
@@ -197,23 +227,18 @@ def tables_of(document: PoiseFile) -> dict[str, Any]:
         A part of a kind that files do not know, or one with arrays for values.
     """
     mechanism = document.mechanism
-    kind = next((name for name, cls in LINKAGES.items() if type(mechanism.linkage) is cls), None)
-    if kind is None:
-        raise InputError(
-            f"a {type(mechanism.linkage).__name__} cannot be written to a file, only these linkages: {', '.join(LINKAGES)}"
-        )
     tables: dict[str, Any] = {"schema": SCHEMA}
     if document.title:
         tables["title"] = document.title
     if document.description:
         tables["description"] = document.description
-    if mechanism.gravity != STANDARD:
+    if mechanism.gravity != STANDARD[len(mechanism.gravity)]:
         tables["gravity"] = write_model(_Gravity(components=mechanism.gravity), REGISTRY)
-    tables[kind] = write_model(mechanism.linkage, REGISTRY)
+    tables |= _linkage_table(mechanism.linkage)
     if mechanism.travel is not None:
-        tables["travel"] = write_model(_Range(first=mechanism.travel[0], last=mechanism.travel[1]), REGISTRY)
+        tables["travel"] = travel_tables(mechanism.travel, mechanism.linkage)
     if mechanism.friction != Friction():
-        tables["friction"] = write_model(mechanism.friction, REGISTRY)
+        tables["friction"] = each_or_all_tables(mechanism.friction, REGISTRY)
     opened = {one.place: one.fields for one in document.open_springs}
     springs = [_mount_table(mount, opened.get(i, ())) for i, mount in enumerate(document.all_mounts)]
     lists = {
@@ -224,7 +249,7 @@ def tables_of(document: PoiseFile) -> dict[str, Any]:
     }
     tables |= {name: entries for name, entries in lists.items() if entries}
     if document.actuator is not None:
-        tables["actuator"] = write_model(document.actuator, REGISTRY)
+        tables["actuator"] = each_or_all_tables(document.actuator, REGISTRY)
     if document.design is not None:
         tables["design"] = write_kind(document.design, REGISTRY, DESIGNS)
     return tables

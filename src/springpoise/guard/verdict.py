@@ -11,8 +11,10 @@ from numpy.typing import NDArray
 
 from springpoise.feedforward import Actuator
 from springpoise.guard.amounts import JSON_SUFFIX, celsius, finite_or_none, shown
+from springpoise.guard.joints import JointPose, Pose, joint_names, pose_at, shown_pose
 from springpoise.guard.service import Service
 from springpoise.mechanism import Mechanism
+from springpoise.mechanism.travel import joint_units_of
 
 __all__ = ["Case", "LimitVerdict", "broken", "greatest", "judged", "least"]
 
@@ -25,16 +27,38 @@ class Case:
 
     mechanism: Mechanism
     """The mechanism, with the payload of the limit on it."""
-    actuator: Actuator | None
-    """The actuator; None where the file states none."""
+    actuator: Actuator | tuple[Actuator, ...] | None
+    """The actuator, or one for each joint; None where the file states none."""
     poses: Array
-    """Poses [rad], shape (n,)."""
+    """Poses [rad, or m for prismatic joints], shape (n,), or (n, joints) for several."""
     payload: str | None
     """Name of the payload; None for none."""
     temperature: float | None = None
     """Temperature of the springs [K]; None for that of their values."""
     service: tuple[Service, ...] = ()
     """What is known of the springs in service."""
+
+    @property
+    def shape(self) -> tuple[int]:
+        """Shape of one value for each pose."""
+        return (len(self.poses),)
+
+    def pose(self, index: int) -> Pose:
+        """One of the poses, as it is reported."""
+        return pose_at(self.mechanism, self.poses, index)
+
+    @property
+    def joints(self) -> tuple[tuple[str, str], ...]:
+        """Name of each joint, and unit of its travel."""
+        linkage = self.mechanism.linkage
+        return tuple(zip(joint_names(linkage), joint_units_of(linkage), strict=True))
+
+    def columns(self, values: Any, count: int) -> list[Array]:
+        """Values for each of so many joints or pivots, one after the other, each of :attr:`shape`."""
+        given = np.asarray(values, dtype=np.float64)
+        if count == 1:
+            return [np.broadcast_to(given[..., 0] if given.ndim > 1 else given, self.shape)]
+        return list(np.broadcast_to(given, (*self.shape, count)).T)
 
 
 @attrs.frozen(kw_only=True)
@@ -53,14 +77,16 @@ class LimitVerdict:
     """How far inside the limit, in ``unit``; negative outside, NaN where the value is."""
     unit: str
     """SI unit of the three, such as ``"N*m"``."""
-    at: float | None
-    """Pose where the value occurs [rad]; None where it belongs to no pose."""
+    at: Pose | None
+    """Pose where the value occurs [rad], or of several joints; None where it belongs to no pose."""
     payload: str | None = None
     """Payload that was on the mechanism; None for none."""
     temperature: float | None = None
     """Temperature of the springs [K]; None for that of their values."""
     about: str = ""
-    """What the value is of where that is not plain, such as a spring's name."""
+    """What the value is of where that is not plain, such as a spring's or a joint's name."""
+    joint: str = ""
+    """Joint or pivot whose value it is, where there are several."""
     sentence: str = ""
     """All of this in words."""
 
@@ -73,10 +99,12 @@ class LimitVerdict:
             f"value{suffix}": finite_or_none(self.value),
             f"allowed{suffix}": finite_or_none(self.allowed),
             f"margin{suffix}": finite_or_none(self.margin),
-            "at_rad": finite_or_none(self.at),
+            "at_rad": None if isinstance(self.at, JointPose) else finite_or_none(self.at),
+            **({"at": self.at.to_dict()} if isinstance(self.at, JointPose) else {}),
             "payload": self.payload,
             "temperature_K": finite_or_none(self.temperature),
             "about": self.about,
+            **({"joint": self.joint} if self.joint else {}),
             "sentence": self.sentence,
         }
 
@@ -84,21 +112,21 @@ class LimitVerdict:
         return self.sentence
 
 
-def greatest(values: Any, case: Case) -> tuple[float, float]:
-    """The greatest value over the poses and its pose [rad]; NaN and its pose where there is one."""
+def greatest(values: Any, case: Case) -> tuple[float, Pose]:
+    """The greatest value over the poses and its pose; NaN and its pose where there is one."""
     return _extreme(values, case, np.argmax)
 
 
-def least(values: Any, case: Case) -> tuple[float, float]:
-    """The least value over the poses and its pose [rad]; NaN and its pose where there is one."""
+def least(values: Any, case: Case) -> tuple[float, Pose]:
+    """The least value over the poses and its pose; NaN and its pose where there is one."""
     return _extreme(values, case, np.argmin)
 
 
-def _extreme(values: Any, case: Case, choose: Any) -> tuple[float, float]:
-    over = np.broadcast_to(np.asarray(values, dtype=np.float64), case.poses.shape)
+def _extreme(values: Any, case: Case, choose: Any) -> tuple[float, Pose]:
+    over = np.broadcast_to(np.asarray(values, dtype=np.float64), case.shape)
     wrong = np.isnan(over)
     i = int(np.argmax(wrong)) if wrong.any() else int(choose(over))
-    return float(over[i]), float(case.poses[i])
+    return float(over[i]), case.pose(i)
 
 
 def judged(
@@ -107,10 +135,11 @@ def judged(
     value: float,
     allowed: float,
     unit: str,
-    at: float | None,
+    at: Pose | None,
     *,
     at_least: bool = False,
     about: str = "",
+    joint: str = "",
     subject: str = "",
     also: str = "",
     hint: str = "is an end of a cable inside a disc there, or a value far too large?",
@@ -121,6 +150,8 @@ def judged(
     ----------
     about
         What the value is of, such as a spring's name.
+    joint
+        The joint or pivot that it is of, where there are several.
     subject
         What the sentence begins with; by default ``what``.
     also
@@ -128,9 +159,10 @@ def judged(
     hint
         What is asked where the value is not a number.
     """
+    about = about or joint
     margin = value - allowed if at_least else allowed - value
     holds = bool(margin >= 0)  # NaN does not hold
-    where = "" if at is None or (subject and not math.isnan(value)) else f" at {shown(at, 'rad')}"
+    where = "" if at is None or (subject and not math.isnan(value)) else f" at {shown_pose(at)}"
     load = _conditions(case)
     head = f"{subject or what}{f' of {about}' if about else ''}{load}"
     if math.isnan(margin) or margin == -math.inf:
@@ -151,6 +183,7 @@ def judged(
         payload=case.payload,
         temperature=case.temperature,
         about=about,
+        joint=joint,
         sentence=sentence,
     )
 

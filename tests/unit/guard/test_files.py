@@ -35,7 +35,7 @@ Write = Callable[..., Path]
         (b"a." * 6000 + b"a = 1", "line 1 has 12005 characters, more than 10000"),
         (b"a." * 4000 + b"a = 1", "must have the key schema"),
         (b"#" * 9 + b"\n" + b"# x\n" * 300_000, "has more than 1000000 bytes"),
-        (b"schema = 1", "must have one of the tables arm, got none"),
+        (b"schema = 1", "must have one of the tables arm, linkage, got none"),
         (b"\xef\xbb\xbfschema = 2", "schema: must be 1"),
     ],
 )

@@ -131,7 +131,7 @@ RATE = 'rate = "0.245 N/mm" # bought'
         # kinds
         ('kind = "zero length"', "", "springs[1].spring: must have the key kind, one of extension, zero length, "),
         ('"zero length"', '"zero lenght"', "kind: must be a kind of spring, got the text 'zero lenght'; did you mean 'zero length'?"),
-        ('"straight"', '"spool"', "springs[1].path.kind: must be a kind of path, got the text 'spool'; known are straight, "),
+        ('"straight"', '"wheel"', "springs[1].path.kind: must be a kind of path, got the text 'wheel'; known are straight, "),
         ('what = "residual torque"', 'what = "noise"', "limits[1].what: must be a kind of limit, got the text 'noise'"),
         ('"zero length"', "7", "springs[1].spring.kind: must be a text, got 7"),
         # values
@@ -167,7 +167,7 @@ RATE = 'rate = "0.245 N/mm" # bought'
         ('name = "boom"', 'name = " "', "arm.bodies[1].name: must be a text, got the text ' '"),
         # tables and lists
         ("[travel]", "travel = 3\n[friction2]", "friction2: is not a known key"),
-        ('[friction]\ncoulomb = "0.2 N*m"', "[[friction]]", "friction: must be a table, got the list"),
+        ('[friction]\ncoulomb = "0.2 N*m"', "[[friction]]\n[[friction]]", "friction: must be a table for each of 1 joint (arm), or one table for all, got 2"),
         ("[[payloads]]", "[payloads]", "payloads: must be a list, got the table"),
         ('[[limits]]\nwhat = "residual torque"\nat_most = "3 %"', "[limits]", "limits: must be a list, got the table"),
         ('[[payloads]]\nname = "crate"', '[[payloads]]\nmotor = 1\nname = "crate"', "payloads[1].motor: is not a known key"),
@@ -198,7 +198,7 @@ RATE = 'rate = "0.245 N/mm" # bought'
         ('at_most = "3 %"', 'at_most = "0 %"', "limits[1].at_most: OfPeak.percent must be > 0, got 0.0"),
         ('at_most = "3 %"', "at_most = 3", "limits[1].at_most: must be a text, got 3"),
         ('at_most = "3 %"', 'at_most = "3 %"\nnorm = "mean"', "norm: ResidualTorque.norm must be 'worst' or 'rms', got 'mean'"),
-        ('at_most = "3 %"', 'at_most = "3 %"\nover = ["9 deg", "9 deg"]', "ResidualTorque.over must be (lower, higher) rad, got (0.15"),
+        ('at_most = "3 %"', 'at_most = "3 %"\nover = ["9 deg", "9 deg"]', "limits[1].over: Limit.over must be (lower, higher) rad, got (0.15"),
         ('at_most = "3 %"', 'at_most = "3 %"\nover = ["900 deg", "9 deg"]', "limits[1].over: Limit.over must be within two turns, ±12.57 rad, got 15.708"),
     ],
 )  # fmt: skip
