@@ -17,8 +17,7 @@ from springpoise.balance.sine import SineMatch
 from springpoise.errors import InputError
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
-from springpoise.paths import Cable, Disc, Straight
-from springpoise.paths import Drum
+from springpoise.paths import Cable, Disc, Drum, Straight
 from springpoise.springs import ZeroLengthSpring
 from springpoise.tables import degrees, millimetres, number
 
