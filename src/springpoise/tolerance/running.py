@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import pickle
+from collections import deque
 from concurrent.futures import Executor, Future
 from functools import lru_cache
 from itertools import pairwise
@@ -17,10 +18,11 @@ __all__ = ["CHUNK", "Job", "checked_builds", "checked_seed", "chunk_bounds", "ch
 CHUNK = 2048
 """Builds in a chunk. It is fixed, because the draws of a build depend on the chunk that it is in."""
 
-TASKS, LONGEST = 24, 16
+TASKS, LONGEST, AHEAD = 24, 16, 256
 """Tasks that a run is cut into, so that workers finish together; more where one had more chunks than the second.
 
-A task that has begun is not interrupted, so that it must not be long.
+A task that has begun is not interrupted, so that it must not be long. The third is how many are
+handed in ahead of their results.
 """
 
 _Part = TypeVar("_Part")
@@ -100,14 +102,19 @@ def run(job: Job[_Part], chunks: int, executor: Executor | None) -> _Part:
     payload = pickle.dumps(job)
     tasks = max(min(chunks, TASKS), -(-chunks // LONGEST))
     bounds = [chunks * task // tasks for task in range(tasks + 1)]
-    futures: list[Future[Any]] = []
+    ahead: deque[Future[Any]] = deque()
+    parts: list[_Part] = []
     try:
         for first, last in pairwise(bounds):
-            futures.append(executor.submit(_work, payload, first, last))
-        # One result for each task, whoever computed it and however often it was begun.
-        parts = [future.result() for future in futures]
+            # One result for each task, whoever computed it and however often it was begun. Only so many are
+            # handed in at a time: an interrupt while a pool takes one in can leave the pool waiting for ever.
+            if len(ahead) >= AHEAD:
+                parts.append(ahead.popleft().result())
+            ahead.append(executor.submit(_work, payload, first, last))
+        while ahead:
+            parts.append(ahead.popleft().result())
     except BaseException:  # also an interrupt: what has not begun is not begun any more
-        for future in futures:
+        for future in ahead:
             future.cancel()
         raise
     return job.joined(parts)
