@@ -18,7 +18,7 @@ import numpy as np
 
 from springpoise.lookup import Lookup
 
-__all__ = ["Carrier", "Floats", "interpolate", "joints_of", "namespace"]
+__all__ = ["Carrier", "Floats", "interpolate", "is_zero", "joints_of", "namespace"]
 
 Carrier: TypeAlias = Any
 """A float, an array or a recorded variable: whatever a formula runs on."""
@@ -179,6 +179,11 @@ def joints_of(q: Carrier, count: int) -> tuple[Carrier, ...]:
     if isinstance(q, tuple | list):
         return tuple(q)
     return tuple(q[..., i] for i in range(count))
+
+
+def is_zero(value: Carrier) -> bool:
+    """Whether a value is the plain number zero, so that a formula may leave its term out."""
+    return isinstance(value, float) and value == 0.0
 
 
 def distance(*components: Carrier) -> Carrier:

@@ -86,7 +86,8 @@ def main(argv: Sequence[str] | None = None) -> int:
 
 def _design(arguments: argparse.Namespace) -> _Answer:
     from springpoise import guard
-    from springpoise.guard.files import text_of, write_whole
+    from springpoise.guard.files import text_of
+    from springpoise.writing import write_whole
 
     source = Path(arguments.file)
     document = guard.load(source)

@@ -142,14 +142,15 @@ class ShapedSpool:
         PoiseFileError
             The file cannot be written.
         """
-        from springpoise.balance.spool_files import csv_text, write_whole
+        from springpoise.balance.spool_files import csv_text
+        from springpoise.writing import write_whole
 
         write_whole(csv_text(self), path)
 
     def write_svg(self, path: str | os.PathLike[str]) -> None:
         """Write a drawing to scale, one unit for one mm, with pitch line, machined line and axis; raises as `write_csv`."""
         from springpoise.balance.spool_drawing import svg_text
-        from springpoise.balance.spool_files import write_whole
+        from springpoise.writing import write_whole
 
         write_whole(svg_text(self), path)
 
@@ -161,7 +162,8 @@ class ShapedSpool:
         ImportError
             The package ``ezdxf`` is not installed.
         """
-        from springpoise.balance.spool_files import dxf_text, write_whole
+        from springpoise.balance.spool_files import dxf_text
+        from springpoise.writing import write_whole
 
         write_whole(dxf_text(self), path)
 

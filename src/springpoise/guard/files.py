@@ -5,16 +5,16 @@ from __future__ import annotations
 import contextlib
 import os
 import stat
-import tempfile
 import tomllib
 from pathlib import Path
 from typing import Any
 
-from springpoise.errors import PoiseFileError, SpringpoiseError
+from springpoise.errors import SpringpoiseError
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.place import Place
 from springpoise.guard.reading import document_of, tables_of
 from springpoise.guard.rendering import merged, rendered
+from springpoise.writing import write_whole
 
 __all__ = ["dump", "load", "read_bytes", "save", "text_of"]
 
@@ -171,36 +171,3 @@ def text_of(document: PoiseFile, opening: str = "", folder: Path | None = None) 
                 return text
     head = "".join(f"# {line}\n" for line in opening.splitlines())
     return f"{head}\n{rendered(after)}" if head else rendered(after)
-
-
-def write_whole(text: str, path: Path) -> None:
-    """Write a text to a file in one step: into a new file beside it, which then takes its place.
-
-    Raises
-    ------
-    PoiseFileError
-        It cannot be written; what was there before is untouched.
-    """
-    target = Path(os.path.realpath(path))
-    beside: str | None = None
-    try:
-        try:
-            mode = stat.S_IMODE(os.stat(target).st_mode)
-        except FileNotFoundError:
-            mask = os.umask(0)
-            os.umask(mask)
-            mode = 0o666 & ~mask
-        handle, beside = tempfile.mkstemp(prefix=f".{target.name[:80]}.", dir=target.parent)
-        with os.fdopen(handle, "w", encoding="utf-8", newline="\n") as stream:
-            stream.write(text)
-            stream.flush()
-            os.fsync(stream.fileno())
-        os.chmod(beside, mode)
-        os.replace(beside, target)
-        beside = None
-    except OSError as error:
-        raise PoiseFileError(f"{path}: cannot be written: {error.strerror or error}") from error
-    finally:
-        if beside is not None:
-            with contextlib.suppress(OSError):
-                os.unlink(beside)

@@ -9,7 +9,7 @@ from typing import Any, TypeAlias
 import attrs
 import numpy as np
 
-from springpoise.carriers import Carrier, joints_of, namespace
+from springpoise.carriers import Carrier, is_zero, joints_of, namespace
 from springpoise.errors import InputError
 from springpoise.linkages.body import Body, Point
 from springpoise.linkages.dyads import Assembled, Dyad, SliderDyad
@@ -279,11 +279,11 @@ def _travel(link: Link, driven: dict[str, Carrier]) -> tuple[Carrier, tuple[Carr
 def _joined(sits: Frame, link: Link, travel: Carrier, moves: tuple[Carrier, ...]) -> Frame:
     """The frame of a link whose joint sits at the origin of a frame."""
     if link.joint == "prismatic":
-        if not _is_zero(link.skew):
+        if not is_zero(link.skew):
             xp = namespace(link.skew)
             sits = sits.turned(xp.cos(link.skew), xp.sin(link.skew), (0.0,) * len(moves))
         return sits.slid(travel, moves)
-    angle = travel if _is_zero(link.skew) else travel + link.skew
+    angle = travel if is_zero(link.skew) else travel + link.skew
     xp = namespace(angle)
     return sits.turned(xp.cos(angle), xp.sin(angle), moves)
 
@@ -300,7 +300,3 @@ def _without_body(link: Link, name: str) -> Link:
     bodies = tuple(body for body in link.bodies if body.name != name)
     carried = None if link.carried is None else tuple(body for body in link.carried if body.name != name)
     return attrs.evolve(link, bodies=bodies, carried=carried)
-
-
-def _is_zero(value: Carrier) -> bool:
-    return isinstance(value, float) and value == 0.0

@@ -9,7 +9,7 @@ import attrs
 import numpy as np
 
 from springpoise import units
-from springpoise.carriers import Carrier, namespace
+from springpoise.carriers import Carrier, is_zero, namespace
 from springpoise.errors import InputError, InputTypeError
 from springpoise.gravity import STANDARD_GRAVITY
 from springpoise.linkages.body import Point
@@ -76,7 +76,7 @@ class SpringMount:
     """What the mount is called in tables and errors; None for its number."""
 
     def __attrs_post_init__(self) -> None:
-        if not _is_zero(self.moving_mass) and not hasattr(self.path, "ends"):
+        if not is_zero(self.moving_mass) and not hasattr(self.path, "ends"):
             raise InputError(
                 f"SpringMount.moving_mass must be 0 kg on a {type(self.path).__name__}, got {self.moving_mass}; "
                 "put the mass that moves there into a Body"
@@ -84,7 +84,7 @@ class SpringMount:
 
     def masses(self) -> tuple[PointMass, ...]:
         """The springs' own weight, as point masses at the ends of the path."""
-        if _is_zero(self.moving_mass):
+        if is_zero(self.moving_mass):
             return ()
         ends: tuple[Point, Point] = self.path.ends  # type: ignore[attr-defined]
         return tuple(PointMass(0.5 * self.count * self.moving_mass, end) for end in ends)
@@ -102,7 +102,7 @@ class SpringMount:
     def spring_length(self, linkage: Linkage, q: Carrier) -> Carrier:
         """The spring's own length [m], or angle [rad]."""
         length = self.path.length(linkage, q)
-        return length if _is_zero(self.rigid_length) else length - self.rigid_length
+        return length if is_zero(self.rigid_length) else length - self.rigid_length
 
     def ask(self, method: str, x: Carrier, **options: Any) -> Any:
         """What one of the spring's methods gives at ``x``, which may be an array or a recorded variable.
@@ -155,7 +155,3 @@ class SpringMount:
 
 def _abs(value: Carrier) -> Carrier:
     return namespace(value).abs(value)
-
-
-def _is_zero(value: Carrier) -> bool:
-    return isinstance(value, float) and value == 0.0

@@ -10,7 +10,7 @@ from typing import Any, NamedTuple
 import attrs
 
 from springpoise import units
-from springpoise.carriers import Carrier, namespace
+from springpoise.carriers import Carrier, is_zero, namespace
 from springpoise.errors import InputError, InputTypeError
 from springpoise.linkages.body import Point
 from springpoise.linkages.protocol import AppliedForce, Linkage
@@ -86,7 +86,7 @@ class Disc:
     @property
     def is_frictionless(self) -> bool:
         """Whether the cable passes without loss."""
-        return _is_zero(self.sliding_friction) and _is_zero(self.bearing_friction)
+        return is_zero(self.sliding_friction) and is_zero(self.bearing_friction)
 
     def tension_factors(self, wrap: Carrier) -> tuple[Carrier, Carrier]:
         """Tension behind the disc over tension before it, for the two directions of motion [1].
@@ -94,8 +94,8 @@ class Disc:
         Capstan law exp(±μφ) where the cable slides; 1 ± 2 μ (r_bearing/radius) sin(φ/2) where the
         wheel turns, φ being the wrap.
         """
-        if _is_zero(self.sliding_friction):
-            if _is_zero(self.bearing_friction):
+        if is_zero(self.sliding_friction):
+            if is_zero(self.bearing_friction):
                 return 1.0, 1.0
             half = 0.5 * wrap
             loss = 2.0 * self.bearing_friction * (self.bearing_radius / self.radius) * namespace(half).sin(half)
@@ -103,10 +103,6 @@ class Disc:
         turned = self.sliding_friction * wrap
         xp = namespace(turned)
         return xp.exp(turned), xp.exp(-turned)
-
-
-def _is_zero(value: Carrier) -> bool:
-    return isinstance(value, float) and value == 0.0
 
 
 def _along(value: Any) -> tuple[Point | Disc | Drum, ...]:
