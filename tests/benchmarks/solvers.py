@@ -29,8 +29,8 @@ from springpoise import (
     Straight,
     ZeroLengthSpring,
 )
-from springpoise.balance.methods import compare_methods
-from springpoise.balance.place_geometry import place
+from springpoise.balance.methods.compare import compare_methods
+from springpoise.balance.placing.geometry import place
 from springpoise.carriers import namespace
 
 ARM = Arm(Body(2.0, (0.35, 0.0)))

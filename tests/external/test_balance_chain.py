@@ -13,7 +13,7 @@ import numpy as np
 import pytest
 
 from springpoise import Body, Mechanism
-from springpoise.balance.chain import ChainSpring, balance_chain
+from springpoise.balance.chains.chain import ChainSpring, balance_chain
 from springpoise.linkages import FiveBar, FourBar, Link, PlanarChain, SpatialChain, SpatialLink
 
 G = 9.80665

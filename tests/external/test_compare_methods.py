@@ -15,8 +15,8 @@ import numpy as np
 import pytest
 
 from springpoise import Arm, Body, Friction, Mechanism
-from springpoise.balance.methods import METHODS, compare_methods
-from springpoise.balance.methods_assumptions import MethodAssumptions
+from springpoise.balance.methods.assumptions import MethodAssumptions
+from springpoise.balance.methods.compare import METHODS, compare_methods
 
 A, B, MASS, COM = 0.10, 0.08, 2.0, 0.35
 G = MASS * 9.80665 * COM

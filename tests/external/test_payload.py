@@ -29,7 +29,7 @@ from springpoise import (
     ZeroLengthSpring,
     balance,
 )
-from springpoise.balance.payload import adjust_for_payload
+from springpoise.balance.payloads.adjust import adjust_for_payload
 from springpoise.gravity import STANDARD_GRAVITY
 
 A, B, R, M = 0.10, 0.16, 0.35, 2.0

@@ -30,7 +30,7 @@ from springpoise import (
     ZeroLengthSpring,
     balance,
 )
-from springpoise.balance.place_geometry import place
+from springpoise.balance.placing.geometry import place
 from springpoise.carriers import namespace
 from springpoise.paths import JointTravel
 

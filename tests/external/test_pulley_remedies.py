@@ -16,7 +16,7 @@ import numpy as np
 import pytest
 
 from springpoise import Arm, Body, Cable, Disc, Link, Mechanism, PlanarChain, Point, SpringMount, ZeroLengthSpring
-from springpoise.balance.pulley import pulley_remedies
+from springpoise.balance.pulleys.remedies import pulley_remedies
 from springpoise.gravity import STANDARD_GRAVITY
 from springpoise.paths.drum import Drum
 

@@ -16,7 +16,7 @@ import numpy as np
 import pytest
 
 from springpoise import Arm, Body, ConstantForceSpring, Mechanism, Spool, SpringMount, ZeroLengthSpring
-from springpoise.balance.spool_shape import convex_beyond, shape_spool
+from springpoise.balance.spools.shape import convex_beyond, shape_spool
 from springpoise.gravity import STANDARD_GRAVITY
 from springpoise.paths import GuideRoller
 

@@ -10,7 +10,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from springpoise import Body, Mechanism, Point
-from springpoise.balance.chain import ChainSpring, balance_chain
+from springpoise.balance.chains.chain import ChainSpring, balance_chain
 from springpoise.linkages import FourBar, Link, PlanarChain, SpatialChain, SpatialLink
 
 EXAMPLES = 25

@@ -11,7 +11,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from springpoise import Arm, Body, ExtensionSpring, Mechanism, Point, SpringMount, Straight, ZeroLengthSpring
-from springpoise.balance.place_geometry import place
+from springpoise.balance.placing.geometry import place
 from springpoise.carriers import namespace
 
 Q = np.linspace(-0.9, 1.0, 31)

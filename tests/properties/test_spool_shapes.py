@@ -26,7 +26,7 @@ from springpoise import (
     TorsionSpring,
     ZeroLengthSpring,
 )
-from springpoise.balance.spool_shape import shape_spool
+from springpoise.balance.spools.shape import shape_spool
 from springpoise.paths import GuideRoller
 from springpoise.springs import in_series
 

@@ -10,46 +10,46 @@ from typing import TYPE_CHECKING
 from springpoise.lazy import names_of
 
 if TYPE_CHECKING:
-    from springpoise.balance.candidates import StockCandidate as StockCandidate
-    from springpoise.balance.candidates import StockSearch as StockSearch
-    from springpoise.balance.chain import ChainBalance as ChainBalance
-    from springpoise.balance.chain import ChainSpring as ChainSpring
-    from springpoise.balance.chain import balance_chain as balance_chain
-    from springpoise.balance.chain_fit import ChainFit as ChainFit
-    from springpoise.balance.chain_fit import JointResidual as JointResidual
-    from springpoise.balance.chain_fit import fit_chain as fit_chain
-    from springpoise.balance.chain_fit import joint_residuals as joint_residuals
-    from springpoise.balance.chain_result import BalancingSpring as BalancingSpring
+    from springpoise.balance.chains.chain import ChainBalance as ChainBalance
+    from springpoise.balance.chains.chain import ChainSpring as ChainSpring
+    from springpoise.balance.chains.chain import balance_chain as balance_chain
+    from springpoise.balance.chains.fit import ChainFit as ChainFit
+    from springpoise.balance.chains.fit import JointResidual as JointResidual
+    from springpoise.balance.chains.fit import fit_chain as fit_chain
+    from springpoise.balance.chains.fit import joint_residuals as joint_residuals
+    from springpoise.balance.chains.result import BalancingSpring as BalancingSpring
     from springpoise.balance.fit import SpringFit as SpringFit
     from springpoise.balance.fit import fit_springs as fit_springs
-    from springpoise.balance.methods import compare_methods as compare_methods
-    from springpoise.balance.methods_assumptions import MethodAssumptions as MethodAssumptions
-    from springpoise.balance.methods_figures import MethodFigures as MethodFigures
-    from springpoise.balance.methods_result import MethodComparison as MethodComparison
-    from springpoise.balance.methods_result import MethodRow as MethodRow
-    from springpoise.balance.payload import adjust_for_payload as adjust_for_payload
-    from springpoise.balance.payload_result import AdjustmentStep as AdjustmentStep
-    from springpoise.balance.payload_result import PayloadAdjustment as PayloadAdjustment
-    from springpoise.balance.payload_result import PointToMove as PointToMove
-    from springpoise.balance.place_geometry import place as place
-    from springpoise.balance.place_result import PlacedKnob as PlacedKnob
-    from springpoise.balance.place_result import PlacedLimit as PlacedLimit
-    from springpoise.balance.place_result import Placement as Placement
-    from springpoise.balance.pulley import PulleyRemedies as PulleyRemedies
-    from springpoise.balance.pulley import pulley_remedies as pulley_remedies
-    from springpoise.balance.pulley_routes import PulleyRemedy as PulleyRemedy
+    from springpoise.balance.methods.assumptions import MethodAssumptions as MethodAssumptions
+    from springpoise.balance.methods.compare import compare_methods as compare_methods
+    from springpoise.balance.methods.figures import MethodFigures as MethodFigures
+    from springpoise.balance.methods.result import MethodComparison as MethodComparison
+    from springpoise.balance.methods.result import MethodRow as MethodRow
+    from springpoise.balance.payloads.adjust import adjust_for_payload as adjust_for_payload
+    from springpoise.balance.payloads.result import AdjustmentStep as AdjustmentStep
+    from springpoise.balance.payloads.result import PayloadAdjustment as PayloadAdjustment
+    from springpoise.balance.payloads.result import PointToMove as PointToMove
+    from springpoise.balance.placing.geometry import place as place
+    from springpoise.balance.placing.result import PlacedKnob as PlacedKnob
+    from springpoise.balance.placing.result import PlacedLimit as PlacedLimit
+    from springpoise.balance.placing.result import Placement as Placement
+    from springpoise.balance.pulleys.remedies import PulleyRemedies as PulleyRemedies
+    from springpoise.balance.pulleys.remedies import pulley_remedies as pulley_remedies
+    from springpoise.balance.pulleys.routes import PulleyRemedy as PulleyRemedy
     from springpoise.balance.residuals import Residual as Residual
     from springpoise.balance.residuals import residual as residual
-    from springpoise.balance.route import PulleyRoute as PulleyRoute
-    from springpoise.balance.search import search_stock as search_stock
     from springpoise.balance.sine import SineMatch as SineMatch
     from springpoise.balance.sine import sine_match as sine_match
-    from springpoise.balance.spool_checks import SpoolCheck as SpoolCheck
-    from springpoise.balance.spool_result import ShapedSpool as ShapedSpool
-    from springpoise.balance.spool_shape import convex_beyond as convex_beyond
-    from springpoise.balance.spool_shape import shape_spool as shape_spool
-    from springpoise.balance.stock import Stock as Stock
-    from springpoise.balance.stock import read_stock as read_stock
+    from springpoise.balance.spools.checks import SpoolCheck as SpoolCheck
+    from springpoise.balance.spools.result import ShapedSpool as ShapedSpool
+    from springpoise.balance.spools.shape import convex_beyond as convex_beyond
+    from springpoise.balance.spools.shape import shape_spool as shape_spool
+    from springpoise.balance.stock.candidates import StockCandidate as StockCandidate
+    from springpoise.balance.stock.candidates import StockSearch as StockSearch
+    from springpoise.balance.stock.lists import Stock as Stock
+    from springpoise.balance.stock.lists import read_stock as read_stock
+    from springpoise.balance.stock.route import PulleyRoute as PulleyRoute
+    from springpoise.balance.stock.search import search_stock as search_stock
 
 __all__ = [
     "AdjustmentStep",
@@ -95,45 +95,45 @@ __all__ = [
 ]
 
 _HOME = {
-    "AdjustmentStep": "payload_result",
-    "BalancingSpring": "chain_result",
-    "ChainBalance": "chain",
-    "ChainFit": "chain_fit",
-    "ChainSpring": "chain",
-    "JointResidual": "chain_fit",
-    "MethodAssumptions": "methods_assumptions",
-    "MethodComparison": "methods_result",
-    "MethodFigures": "methods_figures",
-    "MethodRow": "methods_result",
-    "PayloadAdjustment": "payload_result",
-    "PlacedKnob": "place_result",
-    "PlacedLimit": "place_result",
-    "Placement": "place_result",
-    "PointToMove": "payload_result",
-    "PulleyRemedies": "pulley",
-    "PulleyRemedy": "pulley_routes",
-    "PulleyRoute": "route",
+    "AdjustmentStep": "payloads.result",
+    "BalancingSpring": "chains.result",
+    "ChainBalance": "chains.chain",
+    "ChainFit": "chains.fit",
+    "ChainSpring": "chains.chain",
+    "JointResidual": "chains.fit",
+    "MethodAssumptions": "methods.assumptions",
+    "MethodComparison": "methods.result",
+    "MethodFigures": "methods.figures",
+    "MethodRow": "methods.result",
+    "PayloadAdjustment": "payloads.result",
+    "PlacedKnob": "placing.result",
+    "PlacedLimit": "placing.result",
+    "Placement": "placing.result",
+    "PointToMove": "payloads.result",
+    "PulleyRemedies": "pulleys.remedies",
+    "PulleyRemedy": "pulleys.routes",
+    "PulleyRoute": "stock.route",
     "Residual": "residuals",
-    "ShapedSpool": "spool_result",
+    "ShapedSpool": "spools.result",
     "SineMatch": "sine",
-    "SpoolCheck": "spool_checks",
+    "SpoolCheck": "spools.checks",
     "SpringFit": "fit",
-    "Stock": "stock",
-    "StockCandidate": "candidates",
-    "StockSearch": "candidates",
-    "adjust_for_payload": "payload",
-    "balance_chain": "chain",
-    "compare_methods": "methods",
-    "convex_beyond": "spool_shape",
-    "fit_chain": "chain_fit",
+    "Stock": "stock.lists",
+    "StockCandidate": "stock.candidates",
+    "StockSearch": "stock.candidates",
+    "adjust_for_payload": "payloads.adjust",
+    "balance_chain": "chains.chain",
+    "compare_methods": "methods.compare",
+    "convex_beyond": "spools.shape",
+    "fit_chain": "chains.fit",
     "fit_springs": "fit",
-    "joint_residuals": "chain_fit",
-    "place": "place_geometry",
-    "pulley_remedies": "pulley",
-    "read_stock": "stock",
+    "joint_residuals": "chains.fit",
+    "place": "placing.geometry",
+    "pulley_remedies": "pulleys.remedies",
+    "read_stock": "stock.lists",
     "residual": "residuals",
-    "search_stock": "search",
-    "shape_spool": "spool_shape",
+    "search_stock": "stock.search",
+    "shape_spool": "spools.shape",
     "sine_match": "sine",
 }
 

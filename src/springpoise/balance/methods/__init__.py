@@ -1,0 +1,1 @@
+"""The ways to balance one arm, side by side."""

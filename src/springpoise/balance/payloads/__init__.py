@@ -1,0 +1,1 @@
+"""Which point to move, and how far, when the payload changes."""

@@ -1,0 +1,1 @@
+"""The best geometry in a box for any mechanism."""

@@ -1,0 +1,1 @@
+"""What a pulley of finite radius costs, and what each remedy gives."""

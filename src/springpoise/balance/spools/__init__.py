@@ -1,0 +1,1 @@
+"""Wrapping cams that make an ordinary spring balance an arm."""

@@ -1,0 +1,1 @@
+"""Springs that can be bought: lists of them, and the search for the best."""
