@@ -35,17 +35,22 @@ class Bins:
         margin = EXTENSION * (high - low)
         return cls(low - margin, (high - low + 2.0 * margin) / BINS)
 
+    def part(self, poses: slice) -> Bins:
+        """The bins of some of the poses."""
+        return Bins(self.low[poses], self.width[poses])
+
     def count(self, torques: Array, scratch: Array) -> Counts:
-        """Counts of builds of shape (n, p), all finite; ``scratch`` is an array of that shape to write to."""
+        """Counts of builds of shape (p, n), all finite; ``scratch`` is an array of that shape to write to."""
         poses = self.low.size
         scale = np.divide(1.0, self.width, out=np.zeros(poses), where=self.width > 0.0)
-        place = np.subtract(torques, self.low, out=scratch)
-        place *= scale
+        place = np.subtract(torques, self.low[:, None], out=scratch)
+        place *= scale[:, None]
         np.clip(place, 0.0, BINS - 1.0, out=place)
         index = place.astype(np.intp)
-        index += BINS * np.arange(poses)
+        index += BINS * np.arange(poses)[:, None]
         counts = np.bincount(index.ravel(), minlength=poses * BINS).reshape(poses, BINS)
-        return Counts(counts.astype(np.int32), np.min(torques, axis=0), np.max(torques, axis=0))
+        least, greatest = np.min(torques, axis=1, initial=np.inf), np.max(torques, axis=1, initial=-np.inf)
+        return Counts(counts.astype(np.int32), least, greatest)
 
 
 @attrs.frozen(eq=False)
@@ -60,9 +65,13 @@ class Counts:
     """Greatest value at each pose, shape (p,)."""
 
     @classmethod
-    def nothing(cls, poses: int) -> Counts:
-        """No builds yet."""
-        return cls(np.zeros((poses, BINS), np.int32), np.full(poses, np.inf), np.full(poses, -np.inf))
+    def side_by_side(cls, parts: Sequence[Counts]) -> Counts:
+        """Those of some poses, then those of the next."""
+        return cls(
+            np.concatenate([part.counts for part in parts]),
+            np.concatenate([part.least for part in parts]),
+            np.concatenate([part.greatest for part in parts]),
+        )
 
     @classmethod
     def total(cls, parts: Sequence[Counts]) -> Counts:

@@ -33,8 +33,8 @@ Array = NDArray[np.float64]
 PILOT = 1024
 """Builds from which the bins of the bands are laid out."""
 
-ELEMENTS = 125_000
-"""Torques that are held at once: 1 MB."""
+ELEMENTS = 2**15
+"""Torques that are held at once, of some poses: with their bins they stay in a core's own cache."""
 
 
 @attrs.frozen(eq=False)
@@ -70,25 +70,32 @@ class ScatterJob:
     def chunk(self, index: int) -> Part:
         """One chunk of builds."""
         values = self.values(index)
-        count, poses = values[0].size, self.poses[0].size
-        worst = np.empty((count, len(self.bins)))
-        counts: list[list[Counts]] = [[Counts.nothing(poses)] for _ in self.bins]
-        rows = max(1, ELEMENTS // poses)
-        scratch = np.empty((min(rows, count), poses))
-        for first in range(0, count, rows):
-            here = slice(first, min(first + rows, count))
-            torques = torques_of(self.program, self.poses, [value[here, None] for value in values])
-            size = np.empty((here.stop - first, len(torques)))
-            for joint, torque in enumerate(torques):
-                np.max(np.abs(torque, out=scratch[: len(torque)]), axis=1, out=size[:, joint])
-            worst[here] = size
-            whole = np.all(np.isfinite(size), axis=1)
-            for joint, torque in enumerate(torques):
-                kept = torque if np.all(whole) else torque[whole]
-                if len(kept):
-                    counts[joint].append(self.bins[joint].count(kept, scratch[: len(kept)]))
+        worst, counts = self.tallied(values)
+        if not counts:
+            whole = np.all(np.isfinite(worst), axis=1)
+            counts = self.tallied([value[whole] for value in values])[1]
         lows, highs = np.array([np.min(value) for value in values]), np.array([np.max(value) for value in values])
-        return Part(worst, tuple(map(Counts.total, counts)), lows, highs)
+        return Part(worst, counts, lows, highs)
+
+    def tallied(self, values: list[Array]) -> tuple[Array, tuple[Counts, ...]]:
+        """Greatest torque of each build, shape (builds, joints), and the counts for each joint.
+
+        No counts where a build cannot take some pose, since it counts at none.
+        """
+        builds, poses = values[0].size, self.poses[0].size
+        worst = np.zeros((len(self.bins), builds))
+        counts: list[list[Counts]] = [[] for _ in self.bins]
+        step = max(1, ELEMENTS // max(1, builds))
+        scratch = np.empty((step, builds))
+        for first in range(0, poses, step):
+            here = slice(first, min(first + step, poses))
+            # Builds along the last axis: there are many of them even where few poses are held at once.
+            for joint, torque in enumerate(torques_of(self.program, [q[here, None] for q in self.poses], values)):
+                room = scratch[: len(torque)]
+                np.maximum(worst[joint], np.max(np.abs(torque, out=room), axis=0), out=worst[joint])
+                if np.all(np.isfinite(worst)):
+                    counts[joint].append(self.bins[joint].part(here).count(torque, room))
+        return worst.T, tuple(map(Counts.side_by_side, counts)) if np.all(np.isfinite(worst)) else ()
 
     def joined(self, parts: list[Part]) -> Part:
         """Several chunks as one."""
