@@ -13,13 +13,14 @@ from numpy.typing import NDArray
 
 from springpoise.carriers import Carrier
 from springpoise.errors import InputError, NoSolution
+from springpoise.executors import run
 from springpoise.mechanism import Mechanism
 from springpoise.tables import grid, number
 from springpoise.tape import Program
 from springpoise.tolerance.adjust_search import Adjusting, adjusted
+from springpoise.tolerance.chunks import checked_builds, checked_seed, chunk_bounds, chunk_count
 from springpoise.tolerance.fields import field_of, list_fields, replaced
 from springpoise.tolerance.recorded import can_vary, nominal, poses_of, size_of, torque_program
-from springpoise.tolerance.running import checked_builds, checked_seed, chunk_bounds, chunk_count, run
 from springpoise.tolerance.spreads import Spread, Spreads, refuse_unbuildable, spreads_of
 
 __all__ = ["Adjuster", "Adjusters", "adjusters"]

@@ -11,9 +11,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from springpoise.errors import InputError
+from springpoise.executors import run
 from springpoise.mechanism import Mechanism
 from springpoise.tape import Program
 from springpoise.tolerance.bands import Bins, Counts
+from springpoise.tolerance.chunks import checked_builds, checked_seed, chunk_bounds, chunk_count
 from springpoise.tolerance.recorded import (
     columns_of,
     nominal,
@@ -22,7 +24,6 @@ from springpoise.tolerance.recorded import (
     torque_program,
     torques_of,
 )
-from springpoise.tolerance.running import checked_builds, checked_seed, chunk_bounds, chunk_count, run
 from springpoise.tolerance.scatter_result import Scatter, limits_of
 from springpoise.tolerance.spreads import Spread, Spreads, refuse_unbuildable, spreads_of
 

@@ -14,9 +14,9 @@ from springpoise import units
 from springpoise.errors import InputError
 from springpoise.mechanism import Mechanism
 from springpoise.tables import facts, number
+from springpoise.tolerance.chunks import CHUNK, chunk_bounds
 from springpoise.tolerance.fields import field_of, replaced
 from springpoise.tolerance.recorded import pose_text
-from springpoise.tolerance.running import CHUNK, chunk_bounds
 from springpoise.tolerance.spreads import PERCENT, Spreads
 
 __all__ = ["Scatter", "limits_of"]

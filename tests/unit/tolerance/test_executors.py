@@ -17,7 +17,7 @@ import pytest
 from springpoise import Arm, Body, ExtensionSpring, Mechanism, Point, SpringMount, Straight
 from springpoise.errors import InputTypeError
 from springpoise.tolerance import Spread, adjusters, scatter
-from springpoise.tolerance.running import CHUNK
+from springpoise.tolerance.chunks import CHUNK
 
 BUILDS = 5 * CHUNK + 17
 SPREADS = {

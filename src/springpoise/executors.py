@@ -1,9 +1,10 @@
-"""Runs a study's builds chunk by chunk, here or on the workers of an executor, with the same result."""
+"""Work in chunks, done here or by the workers of an executor, with the same result."""
 
 from __future__ import annotations
 
 import pickle
 from collections import deque
+from collections.abc import Callable
 from concurrent.futures import Executor, Future
 from functools import lru_cache
 from itertools import pairwise
@@ -11,12 +12,9 @@ from typing import Any, Protocol, TypeVar
 
 import numpy as np
 
-from springpoise.errors import InputError, InputTypeError
+from springpoise.errors import InputTypeError
 
-__all__ = ["CHUNK", "Job", "checked_builds", "checked_seed", "chunk_bounds", "chunk_count", "run"]
-
-CHUNK = 2048
-"""Builds in a chunk. It is fixed, because the draws of a build depend on the chunk that it is in."""
+__all__ = ["Job", "check_executor", "run"]
 
 TASKS, LONGEST, AHEAD = 24, 16, 256
 """Tasks that a run is cut into, so that workers finish together; more where one had more chunks than the second.
@@ -40,44 +38,21 @@ class Job(Protocol[_Part]):
         ...
 
 
-def chunk_count(builds: int) -> int:
-    """How many chunks there are."""
-    return -(-builds // CHUNK)
-
-
-def chunk_bounds(index: int, builds: int) -> tuple[int, int]:
-    """The first build of a chunk, and how many it has."""
-    first = index * CHUNK
-    return first, min(CHUNK, builds - first)
-
-
-def checked_builds(builds: Any) -> int:
-    """A number of builds.
+def check_executor(executor: Any) -> None:
+    """Refuse what is no executor.
 
     Raises
     ------
-    InputError
-        Not a whole number from 1 on.
+    InputTypeError
+        Neither None nor an executor with the interface of ``concurrent.futures``.
     """
-    if isinstance(builds, bool) or not isinstance(builds, int | np.integer) or builds < 1:
-        raise InputError(f"builds must be a whole number >= 1, got {builds!r}")
-    return int(builds)
+    if executor is not None and (isinstance(executor, type) or not callable(getattr(executor, "submit", None))):
+        raise InputTypeError(f"executor must be an executor of concurrent.futures or None, got {executor!r}")
 
 
-def checked_seed(seed: Any) -> int:
-    """A seed.
-
-    Raises
-    ------
-    InputError
-        Not a whole number from 0 on.
-    """
-    if isinstance(seed, bool) or not isinstance(seed, int | np.integer) or seed < 0:
-        raise InputError(f"seed must be a whole number >= 0, got {seed!r}")
-    return int(seed)
-
-
-def run(job: Job[_Part], chunks: int, executor: Executor | None) -> _Part:
+def run(
+    job: Job[_Part], chunks: int, executor: Executor | None, report: Callable[[int], object] = lambda done: None
+) -> _Part:
     """All chunks of a job.
 
     Parameters
@@ -89,30 +64,38 @@ def run(job: Job[_Part], chunks: int, executor: Executor | None) -> _Part:
     executor
         Any executor with the interface of ``concurrent.futures``, of threads, processes or
         machines; None for here and now.
+    report
+        Is told how many chunks are done, now and then.
 
     Raises
     ------
     InputTypeError
         Something that is no executor.
     """
-    if executor is None:
-        return job.joined([job.chunk(index) for index in range(chunks)])
-    if not callable(getattr(executor, "submit", None)) or isinstance(executor, type):
-        raise InputTypeError(f"executor must be an executor of concurrent.futures or None, got {executor!r}")
-    payload = pickle.dumps(job)
+    check_executor(executor)
     tasks = max(min(chunks, TASKS), -(-chunks // LONGEST))
-    bounds = [chunks * task // tasks for task in range(tasks + 1)]
-    ahead: deque[Future[Any]] = deque()
+    bounds = list(pairwise(chunks * task // tasks for task in range(tasks + 1)))
     parts: list[_Part] = []
+
+    def done(part: _Part) -> None:
+        parts.append(part)
+        report(bounds[len(parts) - 1][1])
+
+    if executor is None:
+        for first, last in bounds:
+            done(_part(job, first, last))
+        return job.joined(parts)
+    payload = pickle.dumps(job)
+    ahead: deque[Future[Any]] = deque()
     try:
-        for first, last in pairwise(bounds):
+        for first, last in bounds:
             # One result for each task, whoever computed it and however often it was begun. Only so many are
             # handed in at a time: an interrupt while a pool takes one in can leave the pool waiting for ever.
             if len(ahead) >= AHEAD:
-                parts.append(ahead.popleft().result())
+                done(ahead.popleft().result())
             ahead.append(executor.submit(_work, payload, first, last))
         while ahead:
-            parts.append(ahead.popleft().result())
+            done(ahead.popleft().result())
     except BaseException:  # also an interrupt: what has not begun is not begun any more
         for future in ahead:
             future.cancel()
@@ -131,5 +114,8 @@ def _loaded(payload: bytes) -> Any:
 
 def _work(payload: bytes, first: int, last: int) -> Any:
     """Chunks ``first`` to ``last - 1`` of a job, on a worker."""
-    job = _loaded(payload)
+    return _part(_loaded(payload), first, last)
+
+
+def _part(job: Job[_Part], first: int, last: int) -> _Part:
     return job.joined([job.chunk(index) for index in range(first, last)])
