@@ -157,7 +157,7 @@ def _from_stock(given: PoiseFile, request: StockRequest, loaded: Mechanism, befo
         counts=request.counts,
         over=loaded.poses(request.poses),
         pulley=request.pulley,
-        anchor_angle=request.anchor_angle,
+        anchor_angles=request.anchor_angle,
         least_margin=request.least_margin,
         residual_limit=limit.share * before.peak_gravity_torque if isinstance(limit, OfPeak) else limit,
         keep=LISTED,

@@ -204,7 +204,7 @@ def test_refinement_within_a_line():
 
 
 def test_an_anchor_aside_turns_the_attachment_with_it():
-    tilted = balance.search_stock(ARM, STOCK, **GRID, anchor_angle="120 deg", refine=0)
+    tilted = balance.search_stock(ARM, STOCK, **GRID, anchor_angles="120 deg", refine=0)
     assert tilted.best.attach_angle == pytest.approx(np.radians(30))
     assert tilted.best.anchor_angle == pytest.approx(np.radians(120))
 

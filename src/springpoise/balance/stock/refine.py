@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from typing import NamedTuple
 
 import attrs
 import numpy as np
@@ -12,18 +13,33 @@ from springpoise.balance.stock.candidates import StockCandidate, candidate, keep
 from springpoise.balance.stock.lists import Stock
 from springpoise.balance.stock.route import Routing
 
-__all__ = ["refined"]
+__all__ = ["Box", "refined"]
 
-Box = tuple[tuple[float, float], tuple[float, float]]
+EVALUATIONS = 200
+"""At the most so many iterations for each direction of the search."""
+
+
+class Box(NamedTuple):
+    """Least and greatest values of a grid."""
+
+    radius: tuple[float, float]
+    """[m]"""
+    height: tuple[float, float]
+    """[m]"""
+    anchor_angle: tuple[float, float]
+    """[rad]"""
+    attach_skew: tuple[float, float]
+    """[rad]"""
 
 
 def refined(
     routing: Routing, stock: Stock, start: StockCandidate, box: Box, step: float, margin: float
 ) -> StockCandidate:
-    """The candidate at the radius and height within the box that make its worst residual least.
+    """The candidate within the box whose worst residual is least.
 
-    Rounded to multiples of ``step``, with a ``margin`` to both ends of the spring's lengths. Comes
-    back as it was where rounding leaves nothing better.
+    Radius and height are rounded to multiples of ``step``, with a ``margin`` to both ends of the
+    spring's lengths. Comes back as it was where rounding leaves nothing better. ``routing`` is the
+    start's.
     """
     import scipy.optimize
 
@@ -31,9 +47,12 @@ def refined(
     q = routing.poses
     base = np.broadcast_to(routing.mechanism.holding_torque(q), q.shape)
 
+    def turned(anchor_angle: float, attach_skew: float) -> Routing:
+        return attrs.evolve(routing, anchor_angle=anchor_angle, attach_skew=attach_skew)
+
     def worst(place: NDArray[np.float64]) -> float:
-        radius, height = map(float, place)
-        geometry = routing.geometry(np.array([radius]), height)
+        radius, height, anchor_angle, attach_skew = whole(place)
+        geometry = turned(anchor_angle, attach_skew).geometry(np.array([radius]), height)
         shift = float(spring.effective_free_length) if routing.pulley is not None else 0.0  # type: ignore[attr-defined]
         length = geometry.pull[0] + shift
         low, high = spring.working_range  # type: ignore[attr-defined]
@@ -42,39 +61,55 @@ def refined(
             return 1e6 * (1.0 + (out if math.isfinite(out) else 1.0))
         return float(np.max(np.abs(base + start.count * spring.load(length) * geometry.lever[0])))
 
-    begin = np.array([start.attach_radius, start.anchor_height])
-    wide = [bounds for bounds in box if bounds[1] > bounds[0]]
+    begin = np.array([start.attach_radius, start.anchor_height, routing.anchor_angle, routing.attach_skew])
+    wide = [axis for axis, (low, high) in enumerate(box) if high > low]
     if not wide:
         return start
+
+    def whole(place: NDArray[np.float64]) -> list[float]:
+        every = begin.copy()
+        every[wide] = place
+        return every.tolist()
+
     # A corner of the first simplex away from the box's edge in each direction.
-    sizes = [0.02 * (high - low) or 0.0 for low, high in box]
-    simplex = [begin]
-    for axis, size in enumerate(sizes):
-        corner = begin.copy()
-        corner[axis] += size if corner[axis] + size <= box[axis][1] else -size
+    simplex = [begin[wide]]
+    for place, axis in enumerate(wide):
+        low, high = box[axis]
+        size = 0.02 * (high - low)
+        corner = begin[wide].copy()
+        corner[place] += size if corner[place] + size <= high else -size
         simplex.append(corner)
     found = scipy.optimize.minimize(
         worst,
-        begin,
+        begin[wide],
         method="Nelder-Mead",
-        bounds=box,
-        options={"initial_simplex": np.array(simplex), "xatol": step / 10, "fatol": 1e-9, "maxiter": 400},
+        bounds=[box[axis] for axis in wide],
+        options={
+            "initial_simplex": np.array(simplex),
+            "xatol": step / 10,
+            "fatol": 1e-9,
+            "maxiter": EVALUATIONS * len(wide),
+        },
     )
+    radius, height, anchor_angle, attach_skew = whole(found.x)
+    there = turned(anchor_angle, attach_skew)
     best = start
-    for radius, height in _roundings(found.x, box, step):
-        there = candidate(routing, stock, start.index, start.count, radius, height)
-        if keeps_margin(there, margin) and _has_room(routing, there) and there.residual.worst < best.residual.worst:
-            best = attrs.evolve(there, refined=True)
+    for drilled in _roundings((radius, height), (box.radius, box.height), step):
+        one = candidate(there, stock, start.index, start.count, *drilled)
+        if keeps_margin(one, margin) and _has_room(there, one) and one.residual.worst < best.residual.worst:
+            best = attrs.evolve(one, refined=True)
     return best
 
 
-def _roundings(place: NDArray[np.float64], box: Box, step: float) -> list[tuple[float, float]]:
+def _roundings(
+    place: tuple[float, float], box: tuple[tuple[float, float], tuple[float, float]], step: float
+) -> list[tuple[float, float]]:
     """The four multiples of the step around a place, kept in the box."""
     choices = []
     for value, (low, high) in zip(place, box, strict=True):
         around = {round(math.floor(value / step) * step, 9), round(math.ceil(value / step) * step, 9)}
         inside = [x for x in around if low - 1e-12 <= x <= high + 1e-12]
-        choices.append(sorted(inside) or [float(value)])
+        choices.append(sorted(inside) or [value])
     return [(radius, height) for radius in choices[0] for height in choices[1]]
 
 

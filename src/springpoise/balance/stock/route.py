@@ -89,20 +89,27 @@ class Geometry(NamedTuple):
     """Length that a spring may take at the most before it meets the pulley [m]; infinite without one."""
 
 
-@attrs.frozen
+@attrs.frozen(eq=False)
 class Routing:
-    """How springs are mounted in a search: what is the same for all candidates."""
+    """How springs are mounted in a search, apart from how far from the pivot."""
 
     mechanism: Mechanism
     """The arm with what is on it already."""
     poses: Array
     """Poses [rad], shape (poses,)."""
-    anchor_angle: float
-    """Direction of the anchor from the pivot [rad]."""
-    attach_angle: float
-    """Direction of the attachment in the arm's frame [rad]."""
+    weight_angle: float
+    """Where a spring of zero free length balances the arm's weight: its attachment's direction less its anchor's [rad]."""
     pulley: PulleyRoute | None
     """The pulley, or None for a straight spring."""
+    anchor_angle: float = 0.5 * math.pi
+    """Direction of the anchor from the pivot [rad]."""
+    attach_skew: float = 0.0
+    """How far the attachment is turned from where a zero free length would want it [rad]."""
+
+    @property
+    def attach_angle(self) -> float:
+        """Direction of the attachment in the arm's frame [rad]."""
+        return math.remainder(self.weight_angle + self.anchor_angle + self.attach_skew, 2.0 * math.pi)
 
     def path(self, radius: Carrier, height: float) -> Path:
         """The path for an attachment radius (or several) and an anchor height [m]."""

@@ -1,4 +1,4 @@
-"""One pass over the grid of a stock search."""
+"""The pass over all mounts of a stock search, chunk by chunk."""
 
 from __future__ import annotations
 
@@ -9,14 +9,16 @@ import attrs
 import numpy as np
 from numpy.typing import NDArray
 
-from springpoise.balance.stock.candidates import StockCandidate, candidate, pareto_front
-from springpoise.balance.stock.lists import Stock
-from springpoise.balance.stock.route import Geometry, Routing
-from springpoise.balance.stock.scoring import worst_residuals
+from springpoise.balance.stock.candidates import pareto_front
+from springpoise.balance.stock.columns import Columns
+from springpoise.balance.stock.mounts import Mounts, Row
+from springpoise.balance.stock.route import Geometry
+from springpoise.balance.stock.scoring import ScoringPoses, worst_residuals
 
-__all__ = ["Scan"]
+__all__ = ["NO_ROOM", "OVERSTRETCHED", "OVER_LIMIT", "SLACK", "UNREACHABLE", "BestPart", "Scan", "Tally"]
 
 Array = NDArray[np.float64]
+Indices = NDArray[np.intp]
 
 SLACK, OVERSTRETCHED, NO_ROOM, UNREACHABLE = (
     "goes slack",
@@ -25,127 +27,173 @@ SLACK, OVERSTRETCHED, NO_ROOM, UNREACHABLE = (
     "attachment inside the pulley",
 )
 OVER_LIMIT = "worst residual above the limit"
+REASONS = (SLACK, OVERSTRETCHED, NO_ROOM, UNREACHABLE, OVER_LIMIT)
+
+ROUNDING = 1e-9
+"""By so much, relatively, a bound is passed before a candidate is left out for it."""
 
 
-class _BestPart(NamedTuple):
+class BestPart(NamedTuple):
     """The best part of one mount and count."""
 
     worst: float
     springs: int
     pivot_load: float
     candidate: int
-    radius: float
-    height: float
+    mount: int
 
 
+@attrs.frozen(eq=False)
+class Tally:
+    """What is remembered of some mounts: the best mount of each part and count, and the best part of each mount."""
+
+    worst: Array
+    """Least worst residual of each part and count [N·m], shape (candidates,); infinite where none fits.
+
+    The few least are exact; of the others it is known that they are no less than these.
+    """
+    mount: NDArray[np.int64]
+    """Number of the mount at which it is so, the first of them, shape (candidates,)."""
+    front: tuple[BestPart, ...]
+    """Of the best parts of each mount and count, those that no other beats in all respects."""
+    counted: dict[str, int]
+    """Rejections by reason."""
+
+
+@attrs.frozen(eq=False)
 class Scan:
-    """What a pass over the grid remembers: the best mount of each part and count, and the best part of each mount."""
+    """Every spring of a list, in every count, at every mount; ``run`` of ``executors`` does the job.
 
-    def __init__(self, routing: Routing, stock: Stock, counts: tuple[int, ...], limit: float, margin: float) -> None:
-        self.routing, self.stock, self.counts = routing, stock, counts
-        self.limit, self.margin = limit, margin
-        self.considered = 0
-        mechanism, q = routing.mechanism, routing.poses
-        self.base = np.broadcast_to(mechanism.holding_torque(q), q.shape)
-        self.bearing = [np.broadcast_to(part, q.shape) for part in mechanism.pivot_force(q)]
-        # One column for each candidate of a mount: all parts for the first count, then for the next.
-        self.part = np.tile(np.arange(len(stock)), len(counts))
-        self.count = np.repeat(np.asarray(counts), len(stock))
-        self.rate = self.count * stock.rate[self.part]
-        self.free = stock.free_length[self.part]
-        self.longest = stock.longest[self.part]
-        self.effective = self.free - stock.initial_tension[self.part] / stock.rate[self.part]
-        straight = routing.pulley is None
-        self.offset = -self.rate * self.effective if straight else np.zeros_like(self.rate)
-        self.zero = np.zeros_like(self.rate) if straight else self.effective
-        size = self.part.size
+    At each mount the springs that can follow it are found by their lengths alone; of these, bounds
+    from a few poses say for which the worst residual over all poses has to be known.
+    """
+
+    mounts: Mounts
+    columns: Columns
+    base: Array
+    """Holding torque without the spring [N·m], shape (poses,)."""
+    bearing: tuple[Array, Array]
+    """Force in the pivot without the spring [N], each of shape (poses,)."""
+    limit: float
+    """Greatest worst residual of a fit [N·m]; may be infinite."""
+    most: int
+    """How many parts and counts are to be known exactly."""
+
+    def chunk(self, index: int) -> Tally:
+        """One row of mounts."""
+        return _RowScan(self, self.mounts.row_at(index)).tally()
+
+    def joined(self, parts: list[Tally]) -> Tally:
+        """Several tallies in the order of their mounts as one."""
+        worst, mount = parts[0].worst.copy(), parts[0].mount.copy()
+        for part in parts[1:]:
+            better = part.worst < worst
+            worst[better], mount[better] = part.worst[better], part.mount[better]
+        front = _front([one for part in parts for one in part.front])
+        return Tally(worst, mount, front, {name: sum(part.counted[name] for part in parts) for name in REASONS})
+
+
+def _front(items: list[BestPart]) -> tuple[BestPart, ...]:
+    return tuple(pareto_front(items, lambda one: (one.worst, one.springs, one.pivot_load)))
+
+
+class _RowScan:
+    """The work on one row of mounts."""
+
+    def __init__(self, scan: Scan, row: Row) -> None:
+        self.scan, self.columns = scan, scan.columns
+        self.first = row.first
+        self.geometry: Geometry = row.routing.geometry(row.radii, row.height)
+        self.poses = ScoringPoses(scan.base)
+        size = self.columns.candidates
         self.worst = np.full(size, math.inf)
-        self.where = np.zeros((size, 2))
-        self.mounts: list[_BestPart] = []
-        self.miss = (math.inf, 0, 0.0, 0.0, "")  # how far out, candidate, radius, height, reason
-        self.counted: dict[str, int] = dict.fromkeys((SLACK, OVERSTRETCHED, NO_ROOM, UNREACHABLE, OVER_LIMIT), 0)
+        self.mount = np.full(size, -1, dtype=np.int64)
+        self.cut = math.inf
+        """So small at the most have the worst residuals of the best parts become."""
+        self.best: list[tuple[int, int, float]] = []  # row, candidate, worst residual
+        self.counted = dict.fromkeys(REASONS, 0)
 
-    def look_at(self, radii: Array, height: float) -> None:
-        """All candidates of all attachment radii at one anchor height."""
-        geometry = self.routing.geometry(radii, height)
-        for row, radius in enumerate(radii.tolist()):
-            self.considered += self.part.size
-            if not (np.all(np.isfinite(geometry.pull[row])) and np.all(np.isfinite(geometry.lever[row]))):
-                self.counted[UNREACHABLE] += self.part.size
-                continue
-            fits = self._fitting(geometry, row, radius, height)
-            if fits.size:
-                self._score(geometry, row, fits, radius, height)
+    def tally(self) -> Tally:
+        """What is remembered of the row."""
+        geometry, windows, counts = self.geometry, self.columns.windows, self.columns.counts.size
+        reached = np.isfinite(geometry.least) & np.isfinite(geometry.greatest) & np.all(np.isfinite(geometry.lever), 1)
+        short = windows.short_enough(geometry.least)
+        hopeful = windows.any_fits(short, geometry.greatest)
+        self.counted[UNREACHABLE] += int(np.sum(~reached)) * self.columns.candidates
+        self.counted[SLACK] += int(np.sum(self.columns.springs - short[reached])) * counts
+        self.counted[OVERSTRETCHED] += int(np.sum(short[reached & ~hopeful])) * counts
+        for row in np.flatnonzero(reached & hopeful).tolist():
+            self._look_at(row, int(short[row]))
+        return Tally(self.worst, self.mount, _front(self._best_parts()), self.counted)
 
-    def _fitting(self, geometry: Geometry, row: int, radius: float, height: float) -> NDArray[np.intp]:
-        """Candidates whose spring stays within its lengths; the others are counted by their first reason."""
-        shortest, longest = self.zero + geometry.least[row], self.zero + geometry.greatest[row]
-        shortfalls = (
-            (SLACK, self.free + self.margin - shortest),
-            (OVERSTRETCHED, longest + self.margin - self.longest),
-            (NO_ROOM, longest - geometry.room),
-        )
-        unfit = np.zeros(self.part.size, dtype=bool)
-        for reason, shortfall in shortfalls:
-            out = (shortfall > 0 if reason is not SLACK else shortfall >= 0) & ~unfit
-            if out.any():
-                self.counted[reason] += int(out.sum())
-                unfit |= out
-        if math.isinf(np.min(self.worst)) and unfit.all():
-            total = np.max([s for _, s in shortfalls], axis=0)
-            nearest = int(np.argmin(total))
-            if total[nearest] < self.miss[0]:
-                reason = max(shortfalls, key=lambda pair: pair[1][nearest])[0]
-                self.miss = (float(total[nearest]), nearest, radius, height, reason)
-        return np.flatnonzero(~unfit)
+    def _look_at(self, row: int, short: int) -> None:
+        """All springs at one mount, of which ``short`` do not go slack."""
+        columns, geometry = self.columns, self.geometry
+        greatest = float(geometry.greatest[row])
+        fits = columns.windows.fitting(short, greatest)
+        self.counted[OVERSTRETCHED] += (short - fits.size) * columns.counts.size
+        if math.isfinite(geometry.room):
+            roomy = fits[columns.own[fits] + greatest <= geometry.room]
+            self.counted[NO_ROOM] += (fits.size - roomy.size) * columns.counts.size
+            fits = roomy
+        if fits.size:
+            self._score(row, fits)
 
-    def _score(self, geometry: Geometry, row: int, fits: NDArray[np.intp], radius: float, height: float) -> None:
-        pull, lever = geometry.pull[row], geometry.lever[row]
+    def _score(self, row: int, fits: Indices) -> None:
+        """The residuals of the springs that fit, as far as they matter."""
+        columns, limit = self.columns, self.scan.limit
+        candidates = (columns.springs * np.arange(columns.counts.size)[:, None] + fits).ravel()
         # Holding torque is minus what the spring exerts, so the spring's share is + load · lever.
-        worst = worst_residuals(self.base, pull, lever, self.rate[fits], self.offset[fits])
-        self.counted[OVER_LIMIT] += int(np.sum(worst > self.limit))
-        better = worst < self.worst[fits]
-        chosen = fits[better]
-        self.worst[chosen] = worst[better]
-        self.where[chosen] = radius, height
-        for count in self.counts:
-            of_count = np.flatnonzero(self.count[fits] == count)
-            if not of_count.size:
-                continue
-            at = of_count[int(np.argmin(worst[of_count]))]
-            if worst[at] <= self.limit:
-                one = int(fits[at])
-                load = self.rate[one] * pull + self.offset[one]
-                right = self.bearing[0] - load * geometry.force_x[row]
-                up = self.bearing[1] - load * geometry.force_y[row]
-                pivot_load = float(np.sqrt(np.max(right * right + up * up)))
-                self.mounts.append(_BestPart(float(worst[at]), count, pivot_load, one, radius, height))
+        rate = np.multiply.outer(columns.counts, columns.rate[fits]).ravel()
+        offset = np.multiply.outer(columns.counts, columns.offset[fits]).ravel()
+        pull, lever = self.geometry.pull[row], self.geometry.lever[row]
+        bound = self.poses.bounds(pull, lever, rate, offset)
+        groups = [slice(i * fits.size, (i + 1) * fits.size) for i in range(columns.counts.size)]
 
-    def best_by_part(self, most: int) -> list[tuple[int, int, float, float]]:
-        """Part, count, radius and height of the best mount of each part and count, the best few of them."""
-        order = np.argsort(self.worst, kind="stable")[:most]
-        found = [i for i in order if math.isfinite(self.worst[i])]
-        return [self._place(int(i), *map(float, self.where[i])) for i in found]
+        # One that may become the best mount of its part, and is among the best parts.
+        matters = bound <= np.minimum(self.worst[candidates], self.cut) * (1.0 + ROUNDING)
+        if math.isfinite(limit):  # whether it keeps the limit
+            over = bound > limit * (1.0 + ROUNDING)
+            self.counted[OVER_LIMIT] += int(np.count_nonzero(over))
+            matters |= ~over
+        else:  # the best part of this mount
+            over = np.zeros(bound.size, dtype=bool)
+            for group in groups:
+                one = group.start + int(np.argmin(bound[group]))
+                reached = worst_residuals(self.scan.base, pull, lever, rate[one : one + 1], offset[one : one + 1])[0]
+                matters[group] |= bound[group] <= reached * (1.0 + ROUNDING)
+        tried = np.flatnonzero(matters)
+        if not tried.size:
+            return
+        worst = worst_residuals(self.scan.base, pull, lever, rate[tried], offset[tried])
+        self.counted[OVER_LIMIT] += int(np.count_nonzero((worst > limit) & ~over[tried]))
+        self._remember(row, candidates[tried], worst)
+        for start, group in zip(np.searchsorted(tried, [g.start for g in groups]), groups, strict=True):
+            own = worst[start : np.searchsorted(tried, group.stop)]
+            if own.size and own.min() <= limit:
+                at = start + int(np.argmin(own))
+                self.best.append((row, int(candidates[tried[at]]), float(worst[at])))
 
-    def front_of_mounts(self) -> list[tuple[int, int, float, float]]:
-        """The same of the best parts of each mount and count that no other beats in all respects."""
-        front = pareto_front(self.mounts, lambda one: (one.worst, one.springs, one.pivot_load))
-        return [self._place(one.candidate, one.radius, one.height) for one in front]
+    def _remember(self, row: int, candidates: Indices, worst: Array) -> None:
+        better = worst < self.worst[candidates]
+        chosen = candidates[better]
+        self.worst[chosen], self.mount[chosen] = worst[better], self.first + row
+        if worst.min() < self.cut and self.scan.most < self.worst.size:
+            self.cut = float(np.partition(self.worst, self.scan.most - 1)[self.scan.most - 1])
 
-    def nearest_miss(self, best: StockCandidate | None) -> StockCandidate | None:
-        """What comes nearest to fitting, with what it lacks; None where no mount can be reached.
-
-        ``best`` is the best candidate whose spring stays within its lengths, if there is one.
-        """
-        if best is not None:
-            return attrs.evolve(
-                best, lacks=f"its worst residual is {best.residual.worst - self.limit:.4g} N*m above the limit"
-            )
-        if not self.miss[4]:
-            return None
-        out, i, radius, height, reason = self.miss
-        lacks = f"{reason}, by {1e3 * out:.3g} mm"
-        return attrs.evolve(candidate(self.routing, self.stock, *self._place(i, radius, height)), lacks=lacks)
-
-    def _place(self, column: int, radius: float, height: float) -> tuple[int, int, float, float]:
-        return int(self.part[column]), int(self.count[column]), radius, height
+    def _best_parts(self) -> list[BestPart]:
+        """The best part of each mount and count, with its load on the pivot."""
+        if not self.best:
+            return []
+        geometry, columns = self.geometry, self.columns
+        rows = np.array([row for row, _, _ in self.best])
+        parts, counts = np.array([columns.part_and_count(one) for _, one, _ in self.best]).T
+        rate, offset = counts * columns.rate[parts], counts * columns.offset[parts]
+        load = rate[:, None] * geometry.pull[rows] + offset[:, None]
+        right = self.scan.bearing[0] - load * geometry.force_x[rows]
+        up = self.scan.bearing[1] - load * geometry.force_y[rows]
+        pivot_load = np.sqrt(np.max(right * right + up * up, axis=1)).tolist()
+        return [
+            BestPart(worst, count, pivot, candidate, self.first + row)
+            for (row, candidate, worst), count, pivot in zip(self.best, counts.tolist(), pivot_load, strict=True)
+        ]

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from concurrent.futures import Executor
 from pathlib import Path as FilePath
 from typing import Any
 
@@ -16,11 +17,15 @@ from springpoise.balance.progress import Progress, steps
 from springpoise.balance.residuals import poses_over
 from springpoise.balance.sine import as_mechanism
 from springpoise.balance.stock.candidates import StockCandidate, StockSearch, candidate, pareto_front
+from springpoise.balance.stock.columns import columns
 from springpoise.balance.stock.lists import Stock, read_stock
-from springpoise.balance.stock.refine import refined
+from springpoise.balance.stock.misses import Misses
+from springpoise.balance.stock.mounts import Mounts
+from springpoise.balance.stock.refine import Box, refined
 from springpoise.balance.stock.route import PulleyRoute, Routing
 from springpoise.balance.stock.scan import Scan
 from springpoise.errors import InputError, InputTypeError
+from springpoise.executors import check_executor, run
 from springpoise.linkages import Arm
 from springpoise.mechanism import Mechanism
 from springpoise.units import ScalarLike
@@ -36,26 +41,26 @@ def search_stock(
     *,
     attach_radii: Any,
     anchor_heights: Any,
+    anchor_angles: Any = math.pi / 2,
+    attach_skews: Any = 0.0,
     counts: Sequence[int] = (1, 2),
     over: Any = None,
     pulley: PulleyRoute | None = None,
-    anchor_angle: ScalarLike = math.pi / 2,
     residual_limit: ScalarLike | None = None,
     least_margin: ScalarLike = 0.0,
     keep: int = 10,
     refine: int = 3,
     resolution: ScalarLike = 1e-4,
     gravity: Any = None,
+    executor: Executor | None = None,
     progress: Progress = None,
 ) -> StockSearch:
     """Try every spring of a stock list at every mount of a grid, in every count.
 
-    The worst residual over the poses is exact for each candidate. A candidate is rejected where
-    its spring goes slack or is stretched beyond its longest length in some pose, or does not fit
-    in front of the pulley. The best few are then refined between the grid's least and greatest
-    values, and rounded to what can be drilled.
-
-    The work grows as radii · heights · springs · counts · poses.
+    The worst residual over the poses is exact for each candidate that is listed. A candidate is
+    rejected where its spring goes slack or is stretched beyond its longest length in some pose, or
+    does not fit in front of the pulley. The best few are then refined between the grid's least and
+    greatest values, and rounded to what can be drilled.
 
     Parameters
     ----------
@@ -67,15 +72,18 @@ def search_stock(
         Distances from pivot to attachment on the arm to try [m], a sequence, each > 0.
     anchor_heights
         Distances from pivot to anchor to try [m], a sequence, each > 0.
+    anchor_angles
+        Directions from pivot to anchor on the ground to try [rad], one or a sequence; by default straight up.
+    attach_skews
+        Angles to try [rad], one or a sequence, each between -pi and pi, by which the attachment is turned
+        on the arm, counter-clockwise, from where a spring of zero free length would balance the arm's
+        weight at every angle.
     counts
         Numbers of equal springs side by side to try.
     over
         Poses [rad]; None for 181 over the travel.
     pulley
         The pulley that springs hide behind; None for springs straight from anchor to arm.
-    anchor_angle
-        Direction from pivot to anchor on the ground [rad]; by default straight up. The attachment
-        lies where a spring of zero free length would balance the arm's weight at every angle.
     residual_limit
         Greatest worst residual that counts as a fit [N·m], after refining; None for no limit.
     least_margin
@@ -88,6 +96,9 @@ def search_stock(
         Steps to which refined radii and heights are rounded [m].
     gravity
         Gravity (gx, gy) [m/s²]; None for the mechanism's own.
+    executor
+        An executor of ``concurrent.futures``, or of any library with that interface, that shares
+        the mounts; None for one core. The result is the same to the last bit. The caller shuts it down.
     progress
         A function of (done, total); True for a bar, False for silence; None for a bar on long
         runs where tqdm is installed and a terminal is there.
@@ -102,15 +113,25 @@ def search_stock(
     ------
     InputError, InputTypeError, PoiseFileError, UnitError
         An empty or wrong grid, list, count or option, or an arm that needs no spring.
+
+    Notes
+    -----
+    Each mount costs its geometry, once over the poses. Of the list only those springs are looked at
+    whose lengths suit the mount's least and greatest, found in the sorted list; and of these only
+    those are computed at all poses that five poses do not rule out. So time grows with the number of
+    mounts, and with the number of springs that the mounts can take rather than that of the list.
     """
     mechanism = as_mechanism(arm)
     if gravity is not None:
         mechanism = attrs.evolve(mechanism, gravity=gravity)
     if not isinstance(stock, Stock | str | FilePath):
         raise InputTypeError(f"stock must be a Stock or the path of its CSV file, got {stock!r}")
+    check_executor(executor)
     listed = stock if isinstance(stock, Stock) else read_stock(stock)
-    radii = _grid(attach_radii, "attach_radii")
-    heights = _grid(anchor_heights, "anchor_heights")
+    radii = _lengths(attach_radii, "attach_radii")
+    heights = _lengths(anchor_heights, "anchor_heights")
+    angles = _angles(anchor_angles, "anchor_angles", 2.0 * math.pi)
+    skews = _angles(attach_skews, "attach_skews", math.pi)
     numbers = _counts(counts)
     limit = math.inf if residual_limit is None else _positive(residual_limit, "N*m", "residual_limit")
     step = _positive(resolution, "m", "resolution")
@@ -122,26 +143,51 @@ def search_stock(
             raise InputError(f"{name} must be a whole number >= {int(name == 'keep')}, got {value!r}")
     if pulley is not None and not isinstance(pulley, PulleyRoute):
         raise InputTypeError(f"pulley must be a PulleyRoute or None, got {pulley!r}")
-    routing = _routing(mechanism, poses_over(mechanism, over), units.radian(anchor_angle, "anchor_angle"), pulley)
-    scan = Scan(routing, listed, numbers, limit, margin)
-    with steps(progress, len(heights) * radii.size * len(listed) * len(numbers), "springs tried") as report:
-        for height in heights.tolist():
-            scan.look_at(radii, height)
-            report(scan.considered)
+    poses = poses_over(mechanism, over)
+    base, weight_angle = _to_balance(mechanism, poses)
+    springs = columns(listed, numbers, margin, straight=pulley is None)
+    mounts = Mounts.for_springs(
+        tuple(Routing(mechanism, poses, weight_angle, pulley, a, s) for a in angles.tolist() for s in skews.tolist()),
+        heights,
+        radii,
+        springs.candidates,
+    )
+    most = max(keep, refine)
+    bearing = tuple(np.broadcast_to(part, poses.shape) for part in mechanism.pivot_force(poses))
+    scan = Scan(mounts, springs, base, bearing, limit, most)
+    considered = len(mounts) * springs.candidates
+    with steps(progress, considered, "springs tried") as report:
+        tally = run(scan, mounts.row_count, executor, lambda rows: report(mounts.before_row(rows) * springs.candidates))
 
-    rank = [candidate(routing, listed, *place) for place in scan.best_by_part(max(keep, refine))]
-    box = ((float(radii.min()), float(radii.max())), (float(heights.min()), float(heights.max())))
-    better = [refined(routing, listed, one, box, step, margin) for one in rank[:refine]]
+    def taken(column: int, mount: int) -> StockCandidate:
+        at = mounts[mount]
+        return candidate(at.routing, listed, *springs.part_and_count(column), at.radius, at.height)
+
+    best = [int(column) for column in np.argsort(tally.worst, kind="stable")[:most] if tally.mount[column] >= 0]
+    rank = [taken(column, int(tally.mount[column])) for column in best]
+    box = Box(*((float(values.min()), float(values.max())) for values in (radii, heights, angles, skews)))
+    better = [
+        refined(mounts[int(tally.mount[column])].routing, listed, one, box, step, margin)
+        for column, one in zip(best[:refine], rank, strict=False)
+    ]
     # Refining comes first: what it brings below the limit fits.
     rank = sorted([*better, *rank[len(better) :]], key=_merit)
     ranked = tuple([one for one in rank if one.residual.worst <= limit][:keep])
-    front = [candidate(routing, listed, *place) for place in scan.front_of_mounts()]
+    miss = None
+    if not ranked and rank:
+        lacks = f"its worst residual is {rank[0].residual.worst - limit:.4g} N*m above the limit"
+        miss = attrs.evolve(rank[0], lacks=lacks)
+    elif not ranked:
+        nearest = run(Misses(mounts, springs), mounts.row_count, executor)
+        if nearest.reason:
+            lacks = f"{nearest.reason}, by {1e3 * nearest.short:.3g} mm"
+            miss = attrs.evolve(taken(nearest.part, nearest.mount), lacks=lacks)
     return StockSearch(
         candidates=ranked,
-        pareto=tuple(pareto_front([*ranked, *front], _merit)),
-        considered=scan.considered,
-        rejected={reason: number for reason, number in scan.counted.items() if number},
-        nearest_miss=None if ranked else scan.nearest_miss(rank[0] if rank else None),
+        pareto=tuple(pareto_front([*ranked, *(taken(one.candidate, one.mount) for one in tally.front)], _merit)),
+        considered=considered,
+        rejected={reason: number for reason, number in tally.counted.items() if number},
+        nearest_miss=miss,
         residual_limit=None if residual_limit is None else limit,
     )
 
@@ -150,8 +196,8 @@ def _merit(one: StockCandidate) -> tuple[float, int, float]:
     return one.residual.worst, one.count, one.pivot_load
 
 
-def _routing(mechanism: Mechanism, poses: Array, anchor_angle: float, pulley: PulleyRoute | None) -> Routing:
-    """Where attachments lie: where a zero free length balances the arm's weight at every angle."""
+def _to_balance(mechanism: Mechanism, poses: Array) -> tuple[Array, float]:
+    """The torque that is to be balanced; and the angle from a balancing spring's anchor to its attachment at q = 0."""
     torque = np.broadcast_to(mechanism.holding_torque(poses), poses.shape)
     arm = mechanism.linkage
     assert isinstance(arm, Arm)
@@ -159,16 +205,25 @@ def _routing(mechanism: Mechanism, poses: Array, anchor_angle: float, pulley: Pu
     weight = -complex(gx, -gy) * complex(*arm.moment)
     if weight == 0 or not np.max(np.abs(torque)) > 1e-12 * abs(weight):
         raise InputError("arm must have something left to balance, got no torque of gravity and springs")
-    attach_angle = math.atan2(weight.imag, weight.real) + anchor_angle
-    return Routing(mechanism, poses, anchor_angle, math.remainder(attach_angle, 2 * math.pi), pulley)
+    return torque, math.atan2(weight.imag, weight.real)
 
 
-def _grid(values: Any, name: str) -> Array:
+def _lengths(values: Any, name: str) -> Array:
     grid = np.atleast_1d(np.asarray(units.metre(values, name), dtype=np.float64)).ravel()
     if grid.size == 0:
         raise InputError(f"{name} must be at least one length in m, got none")
     if not np.all(grid > 0):
         raise InputError(f"{name} must be > 0 m, got {grid[~(grid > 0)][0]}")
+    return np.unique(grid)
+
+
+def _angles(values: Any, name: str, most: float) -> Array:
+    grid = np.atleast_1d(np.asarray(units.radian(values, name), dtype=np.float64)).ravel()
+    if grid.size == 0:
+        raise InputError(f"{name} must be at least one angle in rad, got none")
+    out = grid[~(np.abs(grid) <= most)]
+    if out.size:
+        raise InputError(f"{name} must be between -{most:.4g} and {most:.4g} rad, got {out[0]}; degrees?")
     return np.unique(grid)
 
 
