@@ -108,17 +108,17 @@ def _magnitude(value: Any, unit: str, name: str) -> Any:
 
 def _array_si(value: Any, unit: str, name: str) -> Any:
     """A read-only float array of finite values; a float for an array without axes."""
-    problem = f"{name} must be {_described(unit)}, got {reprlib.repr(value)} of type {type(value).__name__}"
     if isinstance(value, bool | None | dict | set | frozenset | bytes) or hasattr(value, "mask"):
-        raise InputTypeError(problem)
+        raise _wrong_type(value, unit, name)
+    numbers = value
     if isinstance(value, list | tuple):
         if any(isinstance(item, bool | np.bool_) for item in value):
-            raise InputTypeError(problem)
+            raise _wrong_type(value, unit, name)
         if any(_states_unit(item) for item in value):
-            value = [scalar_si(item, unit, name) for item in value]
-    array = _floats(value)
+            numbers = [scalar_si(item, unit, name) for item in value]
+    array = _floats(numbers)
     if array is None:
-        raise InputTypeError(problem)
+        raise _wrong_type(value, unit, name)
     if array.size == 0:
         raise InputError(f"{name} must be {_described(unit)}, got an empty array")
     if not np.all(np.isfinite(array)):
@@ -129,6 +129,11 @@ def _array_si(value: Any, unit: str, name: str) -> Any:
     array = array.copy()
     array.setflags(write=False)
     return array
+
+
+def _wrong_type(value: Any, unit: str, name: str) -> InputTypeError:
+    # Made only when it is needed: the text of an array costs far more than its conversion.
+    return InputTypeError(f"{name} must be {_described(unit)}, got {reprlib.repr(value)} of type {type(value).__name__}")
 
 
 def _floats(value: Any) -> NDArray[np.float64] | None:

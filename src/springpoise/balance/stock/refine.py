@@ -69,7 +69,7 @@ def refined(
     def whole(place: NDArray[np.float64]) -> list[float]:
         every = begin.copy()
         every[wide] = place
-        return every.tolist()
+        return [float(value) for value in every]
 
     # A corner of the first simplex away from the box's edge in each direction.
     simplex = [begin[wide]]

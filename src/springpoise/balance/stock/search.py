@@ -153,8 +153,8 @@ def search_stock(
         springs.candidates,
     )
     most = max(keep, refine)
-    bearing = tuple(np.broadcast_to(part, poses.shape) for part in mechanism.pivot_force(poses))
-    scan = Scan(mounts, springs, base, bearing, limit, most)
+    right, up = (np.broadcast_to(part, poses.shape) for part in mechanism.pivot_force(poses))
+    scan = Scan(mounts, springs, base, (right, up), limit, most)
     considered = len(mounts) * springs.candidates
     with steps(progress, considered, "springs tried") as report:
         tally = run(scan, mounts.row_count, executor, lambda rows: report(mounts.before_row(rows) * springs.candidates))
