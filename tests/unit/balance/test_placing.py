@@ -24,6 +24,7 @@ from springpoise import (
 )
 from springpoise.balance.placing.geometry import place
 from springpoise.errors import InputError, InputTypeError, NoSolution, UnitError
+from springpoise.linkages import Link, PlanarChain
 from springpoise.paths import JointTravel
 
 ARM = Arm(Body(2.0, (0.35, 0.0)))
@@ -104,6 +105,63 @@ def test_knobs_are_refused(knobs, error, message):
 def test_options_are_refused(options, error, message):
     with pytest.raises(error, match=message):
         _place(**options)
+
+
+def test_points_of_bodies_that_are_not_there_are_refused():
+    with pytest.raises(InputError, match="keep_in must name points of 'ground', 'arm', got one of 'amr'"):
+        _place(keep_in={Point("amr", (0.1, 0)): ((0, 0.1), (-0.1, 0.1))})
+    with pytest.raises(InputError, match="keep_out must name points of 'ground', 'arm', got one of 'bracket'"):
+        _place(keep_out=[(Point("bracket", (0, 0)), 0.01)])
+
+
+def _two_links(height, second="revolute"):
+    links = [
+        Link("upper", Body(1.5, (0.15, 0)), length=0.3),
+        Link("fore", Body(1.0, (0.1, 0)), joint=second),
+    ]
+    path = Straight(Point("ground", (0, height)), Point("upper", (0.09, 0)))
+    travel = [(-1.0, 1.0), (-1.0, 1.0) if second == "revolute" else (0.0, 0.1)]
+    return Mechanism(PlanarChain(links), springs=SpringMount(COIL, path), travel=travel)
+
+
+@pytest.mark.parametrize(
+    ("second", "over", "message"),
+    [
+        ("prismatic", None, "mechanism must have joints of one kind, got both revolute and prismatic ones"),
+        ("revolute", Q, r"over must be poses of shape \(poses, 2\) for this linkage, got shape \(31,\)"),
+        ("revolute", [[0.0, math.nan]], "over must be finite poses, got nan"),
+        ("revolute", [[0.0, 90.0]], "over must be within two turns, .*, got 90; degrees"),
+    ],
+)
+def test_several_joints_that_cannot_be_meant(second, over, message):
+    with pytest.raises(InputError, match=message):
+        place(lambda height: _two_links(height, second), knobs={"height": (0.08, 0.2)}, over=over)
+
+
+def test_several_joints_are_printed_one_by_one():
+    found = place(_two_links, knobs={"height": (0.08, 0.2)}, fit="rate", starts=1)
+    lines = str(found).splitlines()
+    assert [line.split()[:2] for line in lines if line.startswith("    joint")] == [
+        ["joint", "upper"],
+        ["joint", "fore"],
+    ]
+    assert found.residual.poses == 600
+    assert len(found.residual.worst_at) == 2
+    assert str(found.residual).count(" deg") == 2
+
+
+def test_a_lift_that_slides_is_measured_in_newtons():
+    """A carriage of 2 kg on an upright slide, its x axis upwards; weight 19.6 N at every height."""
+    slide = PlanarChain([Link("carriage", Body(2.0, (0, 0)), joint="prismatic")])
+
+    def build(height):
+        path = Straight(Point("ground", (height, 0)), Point("carriage", (0, 0)))
+        return Mechanism(slide, springs=SpringMount(COIL, path), travel=(0.0, 0.1), gravity=(-9.80665, 0.0))
+
+    found = place(build, knobs={"height": (0.2, 0.4)}, fit="rate", starts=2)
+    assert found.residual.peak_gravity_torque == pytest.approx(2.0 * 9.80665)
+    text = str(found)
+    assert " N (" in text and "of the peak gravity force" in text and "deg" not in text
 
 
 def test_builds_are_refused():

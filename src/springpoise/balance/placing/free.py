@@ -52,8 +52,9 @@ class Plain:
         return with_shares(raw, self.layout, [max(float(share), LEAST) for share in shares])
 
     def torque(self, mechanism: Mechanism) -> Array:
-        """Holding torque over the poses [N·m]."""
-        return np.broadcast_to(np.asarray(mechanism.holding_torque(self.q), dtype=np.float64), self.q.shape)
+        """Holding torque over the poses, of all joints side by side [N·m]."""
+        torque = np.asarray(mechanism.holding_torque(self.q), dtype=np.float64)
+        return np.broadcast_to(torque, self.q.shape).T.ravel()
 
     def best_shares(self, place: Array) -> Array:
         """The shares that make the norm least at these knobs, as long as all springs pull: exact."""

@@ -13,14 +13,15 @@ import numpy as np
 from numpy.typing import NDArray
 
 from springpoise import units
+from springpoise.balance.chains.fit import joint_residuals
 from springpoise.balance.placing.free import Plain
 from springpoise.balance.placing.knobs import Knob, box_of, knobs_of
-from springpoise.balance.placing.limits import Rules, limits_of, worst_of
+from springpoise.balance.placing.limits import Rules, limits_of, point_of, worst_of
 from springpoise.balance.placing.problem import Problem, built, recorded
 from springpoise.balance.placing.result import ACTIVE, PlacedKnob, PlacedLimit, Placement
 from springpoise.balance.placing.search import BAD, FEASIBLE, Ended, chosen_starts, gains_at, run_start
 from springpoise.balance.placing.shares import layout_of, nominal, sizable
-from springpoise.balance.residuals import poses_over, residual
+from springpoise.balance.residuals import poses_of_joints, residual_at, shown_pose, unit_of
 from springpoise.errors import InputError, InputTypeError
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism
@@ -70,14 +71,16 @@ def place(
     Parameters
     ----------
     build
-        Function of the knobs, as keyword arguments, that returns a ``Mechanism`` of one joint. It
-        must have the same mounts and travel for all values.
+        Function of the knobs, as keyword arguments, that returns a ``Mechanism`` of any number of
+        joints, revolute or prismatic but not both. It must have the same mounts and travel for all
+        values.
     knobs
         For each argument of ``build`` its bounds (lower, higher): SI numbers, or text such as
         ``"50 mm"`` or ``"-20 deg"``. Both must be finite: without bounds a search runs away to tall
         anchors and soft springs.
     over
-        Poses [rad]; None for 181 over the travel.
+        Poses [rad], shape (p,), or (p, n) for n joints; None for 181 over the travel, or 600 of several
+        joints. Their torques count alike, in N·m.
     norm
         ``"minimax"`` makes the worst residual least, ``"rms"`` its root mean square.
     fit
@@ -187,12 +190,13 @@ def placed(
     """``place`` for checked arguments."""
     middle = {knob.name: 0.5 * (knob.low + knob.high) for knob in knobs}
     first = built(build, middle, None, gravity)
-    q = poses_over(first, over)
+    _check_bodies(first, rules, middle)
+    q = poses_of_joints(first, over)
     free = () if fit == "none" else _free_mounts(first, fixed)
     raw = sizable(first, free)
     layout = layout_of(raw, free, fit)
     base = tuple(nominal(raw, layout, q))
-    peak = residual(first.with_springs(()), q).peak_gravity_torque
+    peak = residual_at(first.with_springs(()), q).peak_gravity_torque
     if not peak > 0.0:
         raise InputError("build must make a mechanism with something to balance, got no gravity torque over the poses")
     plain = Plain(build, knobs, norm, q, peak, rules, free, layout, base, gravity)
@@ -234,11 +238,12 @@ def _result(plain: Plain, best: Ended, problem: Problem | str, starts: int, reac
     judged = []
     for i, limit in enumerate(limits):
         margin, value, allowed, at = worst_of(limit, plain.q)
+        where = shown_pose(at, unit_of(mechanism))
         active = margin <= ACTIVE * limit.scale
         if active and margin >= -FEASIBLE * limit.scale:
             margin = max(margin, 0.0)  # the solver's rounding
         gain = float(gains[1][i]) / limit.scale if exact else None
-        judged.append(PlacedLimit(limit.name, limit.unit, value, allowed, limit.side, margin, at, active, gain))
+        judged.append(PlacedLimit(limit.name, limit.unit, value, allowed, limit.side, margin, at, where, active, gain))
     helpful, left_out = [], []
     for i, mount in enumerate(mechanism.springs):
         torque = np.asarray(mechanism.with_springs(mount).spring_torque(plain.q))
@@ -251,7 +256,8 @@ def _result(plain: Plain, best: Ended, problem: Problem | str, starts: int, reac
         mechanism=final,
         values=values,
         norm=plain.norm,
-        residual=residual(final, plain.q),
+        residual=residual_at(final, plain.q),
+        joints=joint_residuals(final, plain.q),
         knobs=tuple(
             PlacedKnob(
                 knob.name, float(place[i]), knob.low, knob.high, knob.unit, abs(float(gains[0][i])) if exact else None
@@ -295,6 +301,15 @@ def _check_arguments(build: Callable[..., Mechanism], knobs: tuple[Knob, ...]) -
     except TypeError as error:
         names = ", ".join(knob.name for knob in knobs)
         raise InputError(f"knobs must be the arguments of build, got {names}: {error}") from None
+
+
+def _check_bodies(mechanism: Mechanism, rules: Rules, values: Mapping[str, float]) -> None:
+    """Points that have to be somewhere are on bodies that there are."""
+    frames = mechanism.linkage.frames
+    points = [("keep_in", point_of(what, values)) for what, _ in rules.keep_in]
+    for name, point in [*points, *(("keep_out", centre) for centre, _ in rules.keep_out)]:
+        if point.body not in frames:
+            raise InputError(f"{name} must name points of {', '.join(map(repr, frames))}, got one of {point.body!r}")
 
 
 def _free_mounts(mechanism: Mechanism, fixed: Sequence[str | int]) -> tuple[int, ...]:

@@ -164,10 +164,12 @@ def _away(middle: Any, start: Any, end: Any) -> Carrier:
     return distance(*(b - share * a for a, b in zip(run, back, strict=True)))
 
 
-def worst_of(limit: Limit, q: Any) -> tuple[float, float, float, float]:
+def worst_of(limit: Limit, q: Any) -> tuple[float, float, float, Any]:
     """Margin, value, what is allowed and pose where a limit on numbers is nearest."""
-    margin = np.broadcast_to(np.asarray(limit.margin, dtype=np.float64), q.shape)
+    margin, value, allowed = (
+        np.broadcast_to(np.asarray(each, dtype=np.float64), len(q))
+        for each in (limit.margin, limit.value, limit.allowed)
+    )
     at = int(np.argmin(np.where(np.isfinite(margin), margin, -math.inf)))
-    value = np.broadcast_to(np.asarray(limit.value, dtype=np.float64), q.shape)[at]
-    allowed = np.broadcast_to(np.asarray(limit.allowed, dtype=np.float64), q.shape)[at]
-    return float(margin[at]), float(value), float(allowed), float(q[at])
+    pose = float(q[at]) if q.ndim == 1 else tuple(q[at].tolist())
+    return float(margin[at]), float(value[at]), float(allowed[at]), pose

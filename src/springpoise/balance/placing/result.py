@@ -4,9 +4,11 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
+from typing import Any
 
 import attrs
 
+from springpoise.balance.chains.fit import JointResidual
 from springpoise.balance.fit import _described
 from springpoise.balance.residuals import Residual
 from springpoise.errors import NoSolution
@@ -78,8 +80,10 @@ class PlacedLimit:
     """``"at least"`` or ``"at most"``."""
     margin: float
     """How far inside; negative outside."""
-    at: float
-    """That pose [rad]."""
+    at: Any
+    """That pose [rad]; of several joints a tuple with a value each."""
+    place: str
+    """That pose as text."""
     active: bool
     """Whether it is reached."""
     gain: float | None
@@ -87,8 +91,13 @@ class PlacedLimit:
 
     def __str__(self) -> str:
         value, allowed, margin = (_quantity(v, self.unit) for v in (self.value, self.allowed, self.margin))
-        text = f"{value}, {self.side} {allowed}, at {degrees(self.at)}"
+        text = f"{value}, {self.side} {allowed}, at {self.place}"
         return f"{text}: reached" if self.active and self.margin >= 0.0 else f"{text}: margin {margin}"
+
+
+def _of_joint(one: JointResidual) -> str:
+    text = f"worst {number(one.worst, one.unit)}"
+    return text + (f" ({100 * one.worst_fraction:.2f} %)" if one.peak_gravity_torque > 0 else "")
 
 
 def _quantity(value: float, unit: str) -> str:
@@ -106,7 +115,9 @@ class Placement:
     norm: str
     """What was made least: ``"minimax"``, the worst residual, or ``"rms"``."""
     residual: Residual
-    """What is left over the poses."""
+    """What is left over the poses; of several joints, at all of them together."""
+    joints: tuple[JointResidual, ...]
+    """What is left at each joint."""
     knobs: tuple[PlacedKnob, ...]
     """The knobs, each with its bounds and how near they are."""
     limits: tuple[PlacedLimit, ...]
@@ -167,6 +178,8 @@ class Placement:
 
     def __str__(self) -> str:
         rows = [("status", self.status), ("residual", str(self.residual))]
+        if len(self.joints) > 1:
+            rows += [(f"  joint {one.name}", _of_joint(one)) for one in self.joints]
         rows += [(one.name, str(one)) for one in self.knobs]
         for index, mount in enumerate(self.mechanism.springs):
             times = f"{mount.count} x " if mount.count > 1 else ""

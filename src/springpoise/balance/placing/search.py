@@ -61,8 +61,8 @@ def sized(problem: Problem, knobs: Array) -> Array:
     if not many:
         return np.empty((0, count))
     reference = np.repeat(problem.nominal[:, None], count, axis=1)
-    rows, slopes = problem.sloped(np.concatenate([knobs.T, reference]))
-    residual, columns = rows[0], slopes[0, len(problem.knobs) :]
+    residual, _, slopes, _ = problem.sloped(np.concatenate([knobs.T, reference]))
+    columns = slopes[len(problem.knobs) :]
     found = np.empty((many, count))
     for i in range(count):
         matrix, rest = np.nan_to_num(columns[:, i].T), np.nan_to_num(residual[i])
@@ -85,9 +85,10 @@ def chosen_starts(problem: Problem, starts: int, seed: int) -> list[Array]:
     unit = spread_starts(len(problem.knobs), seed)
     knobs = problem.low + unit * problem.width
     shares = sized(problem, knobs)
-    rows = _number(problem.at(np.concatenate([knobs.T, shares])), problem.peak)
-    sizes = np.sqrt(np.mean(rows[0] ** 2, axis=-1))
-    merit = sizes + 10.0 * np.max(-rows[1:], axis=(0, 2), initial=0.0)
+    raw, raw_margins = problem.at(np.concatenate([knobs.T, shares]))
+    residual, margins = _numbers(raw, raw_margins, problem.peak)
+    sizes = np.sqrt(np.mean(residual**2, axis=-1))
+    merit = sizes + 10.0 * np.max(-margins, axis=(0, 2), initial=0.0)
     order = np.argsort(merit, kind="stable")
     taken: list[int] = []
     for apart in (APART, 0.0):
@@ -99,13 +100,13 @@ def chosen_starts(problem: Problem, starts: int, seed: int) -> list[Array]:
     return [np.concatenate([knobs[i], shares[:, i]]) for i in taken]
 
 
-def _number(rows: Array, peak: float) -> Array:
+def _numbers(residual: Array, margins: Array, peak: float) -> tuple[Array, Array]:
     """The residual over its peak and the margins, with something large where one is no number."""
-    rows = np.concatenate([rows[:1] / peak, rows[1:]])
-    if np.all(np.isfinite(rows)):
-        return rows
-    rows = np.concatenate([np.nan_to_num(rows[:1], nan=BAD, neginf=BAD), np.nan_to_num(rows[1:], nan=-BAD)])
-    return np.asarray(rows.clip(-BAD, BAD))
+    residual = residual / peak
+    if np.all(np.isfinite(residual)) and np.all(np.isfinite(margins)):
+        return residual, margins
+    residual = np.nan_to_num(residual, nan=BAD, neginf=BAD).clip(-BAD, BAD)
+    return residual, np.nan_to_num(margins, nan=-BAD).clip(-BAD, BAD)
 
 
 def _short(margins: Array) -> float:
@@ -118,7 +119,7 @@ class _Scaled:
     def __init__(self, problem: Problem, start: Array) -> None:
         self.problem = problem
         knobs = len(problem.knobs)
-        columns = np.max(np.abs(np.nan_to_num(problem.sloped(start)[1][0, knobs:])), axis=1)
+        columns = np.max(np.abs(np.nan_to_num(problem.sloped(start)[2][knobs:])), axis=1)
         columns[columns == 0.0] = 1.0
         self.scale = np.concatenate([problem.width, problem.peak / columns])
         self.base = np.concatenate([problem.low, np.zeros(len(columns))])
@@ -133,21 +134,22 @@ class _Scaled:
         return np.asarray(np.clip((unknowns - self.base) / self.scale, self.low, self.high))
 
     def at(self, z: Array) -> tuple[Array, Array, Array, Array]:
-        """Residual (poses,), margins (rows,) and their slopes (poses or rows, unknowns)."""
+        """Residual (joints · poses,), margins (rows,) and their slopes (as many, unknowns)."""
         key = z.tobytes()
         if self._last is None or self._last[0] != key:
-            rows, slopes = self.problem.sloped(self.unknowns(z))
-            rows = _number(rows, self.problem.peak)
-            if not np.all(np.isfinite(slopes)):
-                slopes = np.nan_to_num(slopes, posinf=0.0, neginf=0.0)
-            peak, count = self.problem.peak, len(z)
+            raw, raw_margins, rates, margin_rates = self.problem.sloped(self.unknowns(z))
+            residual, margins = _numbers(raw, raw_margins, self.problem.peak)
+            rates, margin_rates = (
+                each if np.all(np.isfinite(each)) else np.nan_to_num(each, posinf=0.0, neginf=0.0)
+                for each in (rates, margin_rates)
+            )
             self._last = (
                 key,
                 (
-                    rows[0],
-                    rows[1:].ravel(),
-                    slopes[0].T * (self.scale / peak),
-                    np.moveaxis(slopes[1:], 1, -1).reshape(-1, count) * self.scale,
+                    residual,
+                    margins.ravel(),
+                    rates.T * (self.scale / self.problem.peak),
+                    np.moveaxis(margin_rates, 1, -1).reshape(-1, len(z)) * self.scale,
                 ),
             )
         return self._last[1]
