@@ -14,7 +14,6 @@ import statistics
 import subprocess
 import sys
 import tempfile
-import time
 import timeit
 from collections.abc import Iterator
 from pathlib import Path
@@ -34,7 +33,6 @@ from springpoise import (
     SpringMount,
     Straight,
     ZeroLengthSpring,
-    balance,
 )
 
 HEAVY = {"scipy", "pint", "matplotlib"}
@@ -176,52 +174,11 @@ def pose_rows(poses: int = 1_000_000, repeats: int = 9) -> Iterator[Row]:
         )
 
 
-# ---------------------------------------------------------------------------------- stock search
-
-
-def stock_of(parts: int, longest: float) -> balance.Stock:
-    """A made-up list; with a generous longest length every part fits everywhere."""
-    random = np.random.default_rng(1)
-    rate, free = random.uniform(200.0, 3000.0, parts), random.uniform(0.02, 0.05, parts)
-    return balance.Stock(
-        parts=[f"part {i}" for i in range(parts)],
-        rate=rate,
-        free_length=free,
-        initial_tension=rate * free * random.uniform(0.0, 0.8, parts),
-        longest=free + longest,
-    )
-
-
-def search_rows(parts: int = 2000, mounts: int = 40, repeats: int = 5) -> Iterator[Row]:
-    """Candidates a second, on one core, with the exact worst residual over 61 poses."""
-    arm = Mechanism(Arm(Body(MASS, (COM, 0.0))), travel=(-1.0, 1.0))
-    q = arm.poses(61)
-    radii, heights = np.linspace(0.05, 0.09, mounts), np.linspace(0.14, 0.20, max(1, mounts // 2))
-    for name, longest in (("all of them feasible", 0.5), ("some of them feasible", 0.165)):
-        stock = stock_of(parts, longest)
-        best, found = float("inf"), None
-        for _ in range(repeats):
-            began = time.perf_counter()
-            found = balance.search_stock(
-                arm, stock, attach_radii=radii, anchor_heights=heights, over=q, refine=0, progress=False
-            )
-            best = min(best, time.perf_counter() - began)
-        assert found is not None
-        feasible = found.considered - sum(found.rejected.values())
-        millions = found.considered / best / 1e6
-        yield Row(f"stock search, {name}: candidates a second", f"{millions:.1f} million", "3 million", millions >= 3)
-        if feasible < found.considered:
-            yield Row(
-                "  of which feasible, each with its exact residual", f"{feasible / best / 1e6:.1f} million", "", None
-            )
-
-
 def one_arm_rows() -> Iterator[Row]:
     """All of them."""
     yield from import_rows()
     yield from call_rows()
     yield from pose_rows()
-    yield from search_rows()
 
 
 if __name__ == "__main__":

@@ -15,12 +15,14 @@ from rows import Row, show
 from solvers import solver_rows
 from spatial import spatial_rows
 from springs import spring_rows
+from stock import stock_rows
 from tolerance import tolerance_rows
 
 
 def all_rows() -> Iterator[Row]:
     """The rows of every benchmark beside this file."""
     yield from one_arm_rows()
+    yield from stock_rows()
     yield from spring_rows()
     yield from spatial_rows()
     yield from tolerance_rows()

@@ -9,7 +9,7 @@ import attrs
 import numpy as np
 
 from springpoise.balance.stock.columns import Columns
-from springpoise.balance.stock.mounts import Mounts
+from springpoise.balance.stock.mounts import Mounts, Row
 from springpoise.balance.stock.scan import NO_ROOM, OVERSTRETCHED, SLACK
 
 __all__ = ["Miss", "Misses"]
@@ -33,12 +33,13 @@ class Misses:
     columns: Columns
 
     def chunk(self, index: int) -> Miss:
-        """The nearest miss in one row of mounts."""
-        row = self.mounts.row_at(index)
-        geometry = row.routing.geometry(row.radii, row.height)
-        reached = np.isfinite(geometry.least) & np.isfinite(geometry.greatest) & np.all(np.isfinite(geometry.lever), 1)
+        """The nearest miss in some rows of mounts."""
+        return self.joined([self._of_row(row) for row in self.mounts.rows(index)])
+
+    def _of_row(self, row: Row) -> Miss:
+        geometry = row.geometry()
         nearest = Miss(math.inf, 0, row.first, "")
-        for place in np.flatnonzero(reached).tolist():
+        for place in np.flatnonzero(geometry.reached).tolist():
             least, greatest = geometry.least[place], geometry.greatest[place]
             shortfalls = {
                 SLACK: self.columns.shortest - least,

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from typing import NamedTuple
 
 import attrs
 import numpy as np
 from numpy.typing import NDArray
 
-from springpoise.balance.stock.route import Routing
+from springpoise.balance.stock.route import Geometry, Routing
 
 __all__ = ["Mount", "Mounts", "Row"]
 
@@ -17,8 +18,8 @@ Array = NDArray[np.float64]
 LARGEST_ROW = 128
 """Mounts of a row at the most; their geometry is worked out together."""
 
-CANDIDATES = 4_000_000
-"""Candidates of a row, about: it takes well under a second."""
+CANDIDATES = 2_000_000
+"""Candidates of a chunk, about: it takes a tenth of a second or so."""
 
 
 class Mount(NamedTuple):
@@ -38,6 +39,10 @@ class Row(NamedTuple):
     first: int
     """Number of the first of them."""
 
+    def geometry(self) -> Geometry:
+        """Their lengths, levers and pulls."""
+        return self.routing.geometry(self.radii, self.height)
+
 
 @attrs.frozen(eq=False)
 class Mounts:
@@ -51,39 +56,44 @@ class Mounts:
     """Distances from pivot to attachment [m]."""
     row: int
     """Mounts in a row, but for the last ones of a height."""
+    rows_of_a_chunk: int
+    """Rows in a chunk, but for the last."""
 
     @classmethod
     def for_springs(cls, routings: tuple[Routing, ...], heights: Array, radii: Array, springs: int) -> Mounts:
-        """Rows as long as suits the number of springs that are tried at each mount."""
-        return cls(routings, heights, radii, int(np.clip(CANDIDATES // springs, 1, LARGEST_ROW)))
+        """Rows and chunks as long as suits the number of springs that are tried at each mount."""
+        row = int(np.clip(CANDIDATES // springs, 1, min(LARGEST_ROW, radii.size)))
+        return cls(routings, heights, radii, row, max(1, CANDIDATES // (springs * row)))
 
     def __len__(self) -> int:
         return len(self.routings) * self.heights.size * self.radii.size
 
     @property
-    def row_count(self) -> int:
-        """How many rows there are."""
-        return len(self.routings) * self.heights.size * self._rows_of_a_height
-
-    @property
     def _rows_of_a_height(self) -> int:
         return -(-self.radii.size // self.row)
 
-    def row_at(self, index: int) -> Row:
-        """One row of them, counted from 0."""
-        line, part = divmod(index, self._rows_of_a_height)
-        routing, height = divmod(line, self.heights.size)
-        first = part * self.row
-        return Row(
-            self.routings[routing],
-            float(self.heights[height]),
-            self.radii[first : first + self.row],
-            line * self.radii.size + first,
-        )
+    @property
+    def _rows(self) -> int:
+        return len(self.routings) * self.heights.size * self._rows_of_a_height
 
-    def before_row(self, index: int) -> int:
-        """How many mounts are in the rows before one."""
-        line, part = divmod(index, self._rows_of_a_height)
+    @property
+    def chunks(self) -> int:
+        """How many chunks there are."""
+        return -(-self._rows // self.rows_of_a_chunk)
+
+    def rows(self, chunk: int) -> Iterator[Row]:
+        """The rows of one chunk."""
+        first = chunk * self.rows_of_a_chunk
+        for row in range(first, min(first + self.rows_of_a_chunk, self._rows)):
+            line, part = divmod(row, self._rows_of_a_height)
+            routing, height = divmod(line, self.heights.size)
+            start = part * self.row
+            radii = self.radii[start : start + self.row]
+            yield Row(self.routings[routing], float(self.heights[height]), radii, line * self.radii.size + start)
+
+    def before_chunk(self, chunk: int) -> int:
+        """How many mounts are in the chunks before one."""
+        line, part = divmod(min(chunk * self.rows_of_a_chunk, self._rows), self._rows_of_a_height)
         return line * self.radii.size + part * self.row
 
     def __getitem__(self, number: int) -> Mount:

@@ -88,6 +88,14 @@ class Geometry(NamedTuple):
     room: float
     """Length that a spring may take at the most before it meets the pulley [m]; infinite without one."""
 
+    @property
+    def reached(self) -> NDArray[np.bool_]:
+        """At which radii the cable reaches its end at every pose, shape (radii,)."""
+        known: NDArray[np.bool_] = (
+            np.isfinite(self.least) & np.isfinite(self.greatest) & np.all(np.isfinite(self.lever), axis=1)
+        )
+        return known
+
 
 @attrs.frozen(eq=False)
 class Routing:

@@ -43,17 +43,24 @@ class BestPart(NamedTuple):
     mount: int
 
 
+class _Best(NamedTuple):
+    """The best part of one count at one mount of a row."""
+
+    worst: float
+    candidate: int
+    place: int
+
+
 @attrs.frozen(eq=False)
 class Tally:
-    """What is remembered of some mounts: the best mount of each part and count, and the best part of each mount."""
+    """What is remembered of some mounts: the best parts with their best mounts, and the best part of each mount."""
 
+    candidate: Indices
+    """The best parts and counts, as few as the search wants to know and what ties with the last, ascending."""
     worst: Array
-    """Least worst residual of each part and count [N·m], shape (candidates,); infinite where none fits.
-
-    The few least are exact; of the others it is known that they are no less than these.
-    """
+    """The worst residual of each at its best mount [N·m]."""
     mount: NDArray[np.int64]
-    """Number of the mount at which it is so, the first of them, shape (candidates,)."""
+    """Number of that mount, the first of them."""
     front: tuple[BestPart, ...]
     """Of the best parts of each mount and count, those that no other beats in all respects."""
     counted: dict[str, int]
@@ -80,120 +87,137 @@ class Scan:
     """How many parts and counts are to be known exactly."""
 
     def chunk(self, index: int) -> Tally:
-        """One row of mounts."""
-        return _RowScan(self, self.mounts.row_at(index)).tally()
+        """Some rows of mounts."""
+        some = _ChunkScan(self)
+        for row in self.mounts.rows(index):
+            some.look_at(row)
+        return some.tally()
 
     def joined(self, parts: list[Tally]) -> Tally:
         """Several tallies in the order of their mounts as one."""
-        worst, mount = parts[0].worst.copy(), parts[0].mount.copy()
-        for part in parts[1:]:
-            better = part.worst < worst
-            worst[better], mount[better] = part.worst[better], part.mount[better]
+        candidate, worst, mount = (
+            np.concatenate([getattr(part, name) for part in parts]) for name in ("candidate", "worst", "mount")
+        )
+        order = np.lexsort((worst, candidate))  # of equals the first stays first
+        first = np.diff(candidate[order], prepend=-1) > 0
+        kept = order[first]
+        kept = kept[worst[kept] <= least(worst[kept], self.most)]
         front = _front([one for part in parts for one in part.front])
-        return Tally(worst, mount, front, {name: sum(part.counted[name] for part in parts) for name in REASONS})
+        counted = {name: sum(part.counted[name] for part in parts) for name in REASONS}
+        return Tally(candidate[kept], worst[kept], mount[kept], front, counted)
+
+
+def least(values: Array, number: int) -> float:
+    """The last of so many least values; infinite where there are fewer."""
+    return float(np.partition(values, number - 1)[number - 1]) if number <= values.size else math.inf
 
 
 def _front(items: list[BestPart]) -> tuple[BestPart, ...]:
     return tuple(pareto_front(items, lambda one: (one.worst, one.springs, one.pivot_load)))
 
 
-class _RowScan:
-    """The work on one row of mounts."""
+class _ChunkScan:
+    """The work on some rows of mounts, and what is remembered of them."""
 
-    def __init__(self, scan: Scan, row: Row) -> None:
+    def __init__(self, scan: Scan) -> None:
         self.scan, self.columns = scan, scan.columns
-        self.first = row.first
-        self.geometry: Geometry = row.routing.geometry(row.radii, row.height)
         self.poses = ScoringPoses(scan.base)
-        size = self.columns.candidates
-        self.worst = np.full(size, math.inf)
-        self.mount = np.full(size, -1, dtype=np.int64)
+        self.worst = np.full(self.columns.candidates, math.inf)
+        self.mount = np.full(self.columns.candidates, -1, dtype=np.int64)
         self.cut = math.inf
         """So small at the most have the worst residuals of the best parts become."""
-        self.best: list[tuple[int, int, float]] = []  # row, candidate, worst residual
+        self.front: list[BestPart] = []
         self.counted = dict.fromkeys(REASONS, 0)
 
     def tally(self) -> Tally:
-        """What is remembered of the row."""
-        geometry, windows, counts = self.geometry, self.columns.windows, self.columns.counts.size
-        reached = np.isfinite(geometry.least) & np.isfinite(geometry.greatest) & np.all(np.isfinite(geometry.lever), 1)
+        """What is remembered."""
+        best = np.flatnonzero((self.worst <= self.cut) & (self.mount >= 0))
+        return Tally(best, self.worst[best], self.mount[best], _front(self.front), self.counted)
+
+    def look_at(self, row: Row) -> None:
+        """All springs at a row of mounts."""
+        geometry, windows, counts = row.geometry(), self.columns.windows, self.columns.counts.size
+        reached = geometry.reached
         short = windows.short_enough(geometry.least)
-        hopeful = windows.any_fits(short, geometry.greatest)
+        hopeful = reached & windows.any_fits(short, geometry.greatest)
         self.counted[UNREACHABLE] += int(np.sum(~reached)) * self.columns.candidates
         self.counted[SLACK] += int(np.sum(self.columns.springs - short[reached])) * counts
         self.counted[OVERSTRETCHED] += int(np.sum(short[reached & ~hopeful])) * counts
-        for row in np.flatnonzero(reached & hopeful).tolist():
-            self._look_at(row, int(short[row]))
-        return Tally(self.worst, self.mount, _front(self._best_parts()), self.counted)
+        best = [
+            one
+            for place in np.flatnonzero(hopeful).tolist()
+            for one in self._at(row, geometry, place, int(short[place]))
+        ]
+        self.front += self._best_parts(row, geometry, best)
 
-    def _look_at(self, row: int, short: int) -> None:
-        """All springs at one mount, of which ``short`` do not go slack."""
-        columns, geometry = self.columns, self.geometry
-        greatest = float(geometry.greatest[row])
+    def _at(self, row: Row, geometry: Geometry, place: int, short: int) -> list[_Best]:
+        """All springs at one mount, of which ``short`` do not go slack: the best of each count."""
+        columns, greatest = self.columns, float(geometry.greatest[place])
         fits = columns.windows.fitting(short, greatest)
         self.counted[OVERSTRETCHED] += (short - fits.size) * columns.counts.size
         if math.isfinite(geometry.room):
             roomy = fits[columns.own[fits] + greatest <= geometry.room]
             self.counted[NO_ROOM] += (fits.size - roomy.size) * columns.counts.size
             fits = roomy
-        if fits.size:
-            self._score(row, fits)
+        if not fits.size:
+            return []
+        return self._scored(row.first + place, place, fits, geometry.pull[place], geometry.lever[place])
 
-    def _score(self, row: int, fits: Indices) -> None:
-        """The residuals of the springs that fit, as far as they matter."""
-        columns, limit = self.columns, self.scan.limit
+    def _scored(self, mount: int, place: int, fits: Indices, pull: Array, lever: Array) -> list[_Best]:
+        """The residuals of the springs that fit, as far as they matter: the best of each count."""
+        columns, limit, base = self.columns, self.scan.limit, self.scan.base
         candidates = (columns.springs * np.arange(columns.counts.size)[:, None] + fits).ravel()
         # Holding torque is minus what the spring exerts, so the spring's share is + load · lever.
         rate = np.multiply.outer(columns.counts, columns.rate[fits]).ravel()
         offset = np.multiply.outer(columns.counts, columns.offset[fits]).ravel()
-        pull, lever = self.geometry.pull[row], self.geometry.lever[row]
         bound = self.poses.bounds(pull, lever, rate, offset)
         groups = [slice(i * fits.size, (i + 1) * fits.size) for i in range(columns.counts.size)]
 
         # One that may become the best mount of its part, and is among the best parts.
         matters = bound <= np.minimum(self.worst[candidates], self.cut) * (1.0 + ROUNDING)
+        over = bound > limit * (1.0 + ROUNDING)
         if math.isfinite(limit):  # whether it keeps the limit
-            over = bound > limit * (1.0 + ROUNDING)
             self.counted[OVER_LIMIT] += int(np.count_nonzero(over))
             matters |= ~over
-        else:  # the best part of this mount
-            over = np.zeros(bound.size, dtype=bool)
+        else:  # which is the best of this mount
             for group in groups:
                 one = group.start + int(np.argmin(bound[group]))
-                reached = worst_residuals(self.scan.base, pull, lever, rate[one : one + 1], offset[one : one + 1])[0]
+                reached = worst_residuals(base, pull, lever, rate[one : one + 1], offset[one : one + 1])[0]
                 matters[group] |= bound[group] <= reached * (1.0 + ROUNDING)
         tried = np.flatnonzero(matters)
         if not tried.size:
-            return
-        worst = worst_residuals(self.scan.base, pull, lever, rate[tried], offset[tried])
+            return []
+        worst = worst_residuals(base, pull, lever, rate[tried], offset[tried])
         self.counted[OVER_LIMIT] += int(np.count_nonzero((worst > limit) & ~over[tried]))
-        self._remember(row, candidates[tried], worst)
+        self._remember(mount, candidates[tried], worst)
+        best = []
         for start, group in zip(np.searchsorted(tried, [g.start for g in groups]), groups, strict=True):
             own = worst[start : np.searchsorted(tried, group.stop)]
             if own.size and own.min() <= limit:
                 at = start + int(np.argmin(own))
-                self.best.append((row, int(candidates[tried[at]]), float(worst[at])))
+                best.append(_Best(float(worst[at]), int(candidates[tried[at]]), place))
+        return best
 
-    def _remember(self, row: int, candidates: Indices, worst: Array) -> None:
+    def _remember(self, mount: int, candidates: Indices, worst: Array) -> None:
         better = worst < self.worst[candidates]
         chosen = candidates[better]
-        self.worst[chosen], self.mount[chosen] = worst[better], self.first + row
-        if worst.min() < self.cut and self.scan.most < self.worst.size:
-            self.cut = float(np.partition(self.worst, self.scan.most - 1)[self.scan.most - 1])
+        self.worst[chosen], self.mount[chosen] = worst[better], mount
+        if worst.min() < self.cut:
+            self.cut = least(self.worst, self.scan.most)
 
-    def _best_parts(self) -> list[BestPart]:
-        """The best part of each mount and count, with its load on the pivot."""
-        if not self.best:
+    def _best_parts(self, row: Row, geometry: Geometry, best: list[_Best]) -> list[BestPart]:
+        """The same with their loads on the pivot."""
+        if not best:
             return []
-        geometry, columns = self.geometry, self.columns
-        rows = np.array([row for row, _, _ in self.best])
-        parts, counts = np.array([columns.part_and_count(one) for _, one, _ in self.best]).T
+        columns = self.columns
+        places = np.array([one.place for one in best])
+        parts, counts = np.array([columns.part_and_count(one.candidate) for one in best]).T
         rate, offset = counts * columns.rate[parts], counts * columns.offset[parts]
-        load = rate[:, None] * geometry.pull[rows] + offset[:, None]
-        right = self.scan.bearing[0] - load * geometry.force_x[rows]
-        up = self.scan.bearing[1] - load * geometry.force_y[rows]
+        load = rate[:, None] * geometry.pull[places] + offset[:, None]
+        right = self.scan.bearing[0] - load * geometry.force_x[places]
+        up = self.scan.bearing[1] - load * geometry.force_y[places]
         pivot_load = np.sqrt(np.max(right * right + up * up, axis=1)).tolist()
         return [
-            BestPart(worst, count, pivot, candidate, self.first + row)
-            for (row, candidate, worst), count, pivot in zip(self.best, counts.tolist(), pivot_load, strict=True)
+            BestPart(one.worst, count, pivot, one.candidate, row.first + one.place)
+            for one, count, pivot in zip(best, counts.tolist(), pivot_load, strict=True)
         ]

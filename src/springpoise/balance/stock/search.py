@@ -157,18 +157,20 @@ def search_stock(
     scan = Scan(mounts, springs, base, (right, up), limit, most)
     considered = len(mounts) * springs.candidates
     with steps(progress, considered, "springs tried") as report:
-        tally = run(scan, mounts.row_count, executor, lambda rows: report(mounts.before_row(rows) * springs.candidates))
+        tally = run(
+            scan, mounts.chunks, executor, lambda chunks: report(mounts.before_chunk(chunks) * springs.candidates)
+        )
 
-    def taken(column: int, mount: int) -> StockCandidate:
+    def taken(number: int, mount: int) -> StockCandidate:
         at = mounts[mount]
-        return candidate(at.routing, listed, *springs.part_and_count(column), at.radius, at.height)
+        return candidate(at.routing, listed, *springs.part_and_count(number), at.radius, at.height)
 
-    best = [int(column) for column in np.argsort(tally.worst, kind="stable")[:most] if tally.mount[column] >= 0]
-    rank = [taken(column, int(tally.mount[column])) for column in best]
+    best = np.lexsort((tally.candidate, tally.worst))[:most]
+    rank = [taken(int(tally.candidate[one]), int(tally.mount[one])) for one in best]
     box = Box(*((float(values.min()), float(values.max())) for values in (radii, heights, angles, skews)))
     better = [
-        refined(mounts[int(tally.mount[column])].routing, listed, one, box, step, margin)
-        for column, one in zip(best[:refine], rank, strict=False)
+        refined(mounts[int(tally.mount[one])].routing, listed, found, box, step, margin)
+        for one, found in zip(best[:refine], rank, strict=False)
     ]
     # Refining comes first: what it brings below the limit fits.
     rank = sorted([*better, *rank[len(better) :]], key=_merit)
@@ -178,7 +180,7 @@ def search_stock(
         lacks = f"its worst residual is {rank[0].residual.worst - limit:.4g} N*m above the limit"
         miss = attrs.evolve(rank[0], lacks=lacks)
     elif not ranked:
-        nearest = run(Misses(mounts, springs), mounts.row_count, executor)
+        nearest = run(Misses(mounts, springs), mounts.chunks, executor)
         if nearest.reason:
             lacks = f"{nearest.reason}, by {1e3 * nearest.short:.3g} mm"
             miss = attrs.evolve(taken(nearest.part, nearest.mount), lacks=lacks)
