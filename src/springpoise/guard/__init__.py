@@ -38,15 +38,25 @@ title, description
                   "balance angles", "motor current", "pivot load", "yield margin", "fatigue margin",
                   "buckling margin" or "service temperature", and the fields of that class. Of several
                   joints the worst counts, or the one that joint names; over is a range for each.
+                  "yield": at_least, adjuster; judged by [tolerances].
+[tolerances]      Tolerances: residual_limit, payload, builds, seed, poses, adjusters (each an Adjustable:
+                  field, name, reach), adjusted_builds, coverage; [[tolerances.spreads]] FieldSpread: field,
+                  name, one of normal, uniform and samples, in_order, shared. A field is a number of the
+                  mechanism by the names of springpoise.tolerance, "springs[main].spring.rate"; where a
+                  number stands in the brackets, parts are counted from 0.
 [design]          method = "stock", "sine" or "fit", and the fields of that class. With "fit", what is
                   to be found is written "open" in the springs: rate or pull, and either
                   initial_tension and free_angle, or rigid_length.
+[design.compare]  MethodsRequest: ways of balancing to be put beside the design, between attach_radius and
+                  anchor_height, which with "stock" are those of the search where they are left out.
 ```
 """
 
 from springpoise.guard.amounts import OfPeak
+from springpoise.guard.build_yield import BuildYield
+from springpoise.guard.builds import AdjustedBuilds, SpreadCost
 from springpoise.guard.check import CheckReport, check
-from springpoise.guard.compare import Change, Comparison, compare
+from springpoise.guard.compare import Change, Comparison, TextChange, compare
 from springpoise.guard.document import Payload, PoiseFile
 from springpoise.guard.files import dump, load, save
 from springpoise.guard.joints import JointPose, JointRanges
@@ -60,17 +70,24 @@ from springpoise.guard.limits import (
     StoredEnergy,
     Stretch,
 )
+from springpoise.guard.methods import MethodsRequest
 from springpoise.guard.openings import OpenSpring
 from springpoise.guard.part_limits import BucklingMargin, FatigueMargin, ServiceTemperature, YieldMargin
 from springpoise.guard.part_springs import spring_of
 from springpoise.guard.requests import DesignRequest, FitRequest, SineRequest, Steps, StockRequest
 from springpoise.guard.service import Service
 from springpoise.guard.solve import Design, design
+from springpoise.guard.study import ToleranceStudy
+from springpoise.guard.tolerances import Adjustable, FieldSpread, Tolerances
 from springpoise.guard.verdict import Case, LimitVerdict
+from springpoise.guard.widths import Width
 
 __all__ = [
+    "Adjustable",
+    "AdjustedBuilds",
     "BalanceAngles",
     "BucklingMargin",
+    "BuildYield",
     "Case",
     "Change",
     "CheckReport",
@@ -78,12 +95,14 @@ __all__ = [
     "Design",
     "DesignRequest",
     "FatigueMargin",
+    "FieldSpread",
     "FitRequest",
     "HoldingTorque",
     "JointPose",
     "JointRanges",
     "Limit",
     "LimitVerdict",
+    "MethodsRequest",
     "MotorCurrent",
     "OfPeak",
     "OpenSpring",
@@ -94,10 +113,15 @@ __all__ = [
     "Service",
     "ServiceTemperature",
     "SineRequest",
+    "SpreadCost",
     "Steps",
     "StockRequest",
     "StoredEnergy",
     "Stretch",
+    "TextChange",
+    "ToleranceStudy",
+    "Tolerances",
+    "Width",
     "YieldMargin",
     "check",
     "compare",

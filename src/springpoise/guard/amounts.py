@@ -16,8 +16,11 @@ __all__ = [
     "OfPeak",
     "celsius",
     "finite_or_none",
+    "json_suffix",
     "percent",
+    "share_of",
     "shown",
+    "text_of_share",
     "text_of_torque_or_share",
     "torque_or_share",
     "written",
@@ -40,6 +43,7 @@ ICE_POINT = 273.15
 
 JSON_SUFFIX = {
     "1": "",
+    "%": "_percent",
     "m": "_m",
     "kg": "_kg",
     "N": "_N",
@@ -55,6 +59,12 @@ JSON_SUFFIX = {
     "Pa": "_Pa",
 }
 """What a name in JSON ends with, by unit."""
+
+
+def json_suffix(unit: str) -> str:
+    """What a name in JSON ends with, for any unit."""
+    named = unit.replace("**", "").replace("*", "_").replace("/", "_per_")
+    return JSON_SUFFIX.get(unit, f"_{named}")
 
 
 def written(value: float, unit: str) -> str:
@@ -75,13 +85,15 @@ def written(value: float, unit: str) -> str:
 
 
 def shown(value: float, unit: str, digits: int = 4) -> str:
-    """A value as tables and sentences show it: lengths in mm, angles in deg, the rest in SI."""
+    """A value as tables and sentences show it: lengths in mm, angles in deg, the rest in SI or percent."""
     if not math.isfinite(value):
         return "-" if math.isnan(value) or value < 0 else "no limit" if unit in {"m", "rad"} else "infinite"
     if unit == "rad":
         return f"{math.degrees(value):.2f} deg"
     if unit == "m":
         return f"{1e3 * value:.2f} mm" if abs(value) < 1e4 else number(1e3 * value, "mm", digits)
+    if unit == "%":
+        return f"{value:.2f} %"
     return number(value, unit, digits)
 
 
@@ -142,3 +154,17 @@ def torque_or_share(value: Any) -> Any:
 def text_of_torque_or_share(value: Any) -> str:
     """What :func:`torque_or_share` reads back."""
     return str(value) if isinstance(value, OfPeak) else written(value, "N*m")
+
+
+def share_of(value: Any, name: str) -> float:
+    """A share above 0 and at most 1, given as a number or as a text such as ``"95 %"``."""
+    share = units.parse(value, "1", name) if isinstance(value, str) and "%" in value else units.number(value, name)
+    if not isinstance(share, float) or not 0.0 < share <= 1.0:
+        raise InputError(f"{name} must be above 0 % and at most 100 %, got {value!r}")
+    return share
+
+
+def text_of_share(value: float) -> str | float:
+    """What :func:`share_of` reads back as exactly the same."""
+    text = f"{100.0 * value:.10g} %"
+    return text if units.parse(text, "1") == value else value

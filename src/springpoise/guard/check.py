@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import os
 import warnings
+from collections.abc import Sequence
 from typing import Any
 
 import attrs
@@ -12,6 +13,8 @@ import numpy as np
 
 from springpoise.errors import InputError, InputTypeError, PoiseFileError, SpringpoiseError
 from springpoise.guard.amounts import celsius, shown
+from springpoise.guard.build_yield import BuildYield
+from springpoise.guard.builds import Builds
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.files import load
 from springpoise.guard.joints import poses_over, shown_pose
@@ -22,7 +25,7 @@ from springpoise.mechanism.gas_mounting import check_gas_mounts
 from springpoise.springs import SpringWarning
 from springpoise.tables import grid
 
-__all__ = ["CheckReport", "check", "document_at", "judge"]
+__all__ = ["CheckReport", "builds_of", "check", "document_at", "judge", "keeps_all"]
 
 
 @attrs.frozen
@@ -83,7 +86,11 @@ def table_of(verdicts: tuple[LimitVerdict, ...]) -> str:
         header,
         [
             (
-                f"{verdict.what} of {verdict.joint}" if verdict.joint else verdict.what,
+                f"{verdict.what} of {verdict.joint}"
+                if verdict.joint
+                else f"{verdict.what}, adjusted"
+                if verdict.adjuster
+                else verdict.what,
                 "holds" if verdict.holds else "FAILS",
                 shown(verdict.value, verdict.unit),
                 shown(verdict.allowed, verdict.unit),
@@ -149,9 +156,36 @@ def document_at(document: PoiseFile | str | os.PathLike[str]) -> PoiseFile:
     return load(document)
 
 
-def judge(document: PoiseFile) -> CheckReport:
-    """The verdicts on a document's limits, whatever it leaves open, and what is unwise about its springs."""
+def builds_of(document: PoiseFile) -> Builds | None:
+    """The builds with the scatter that a complete document states; None where it states none."""
+    if document.tolerances is None:
+        return None
+    try:
+        return Builds(document.with_payload(document.tolerances.payload), document.tolerances)
+    except SpringpoiseError as error:
+        kind = InputError if document.path is None else PoiseFileError
+        raise kind(f"{document.called}: tolerances: {error}") from error
+
+
+def keeps_all(document: PoiseFile, builds: Builds | None) -> bool:
+    """Whether a document keeps all its limits; those that take long are judged last, where the others hold."""
+    quick = [limit for limit in document.limits if not isinstance(limit, BuildYield)]
+    slow = [limit for limit in document.limits if isinstance(limit, BuildYield)]
+    return all(not judge(document, builds, limits).failures for limits in (quick, slow) if limits)
+
+
+def judge(document: PoiseFile, builds: Builds | None = None, limits: Sequence[Limit] | None = None) -> CheckReport:
+    """The verdicts on a document's limits, whatever it leaves open, and what is unwise about its springs.
+
+    Parameters
+    ----------
+    builds
+        Its builds, where they are there already.
+    limits
+        Which of its limits; None for all.
+    """
     kind = InputError if document.path is None else PoiseFileError
+    builds = builds_of(document) if builds is None else builds
     verdicts = []
     try:
         _ = document.mechanism.travel_or_turn
@@ -161,8 +195,10 @@ def judge(document: PoiseFile) -> CheckReport:
         warnings.simplefilter("always", SpringWarning)
         check_gas_mounts(document.mechanism, rod_at=lambda name: service_of(document.service, name).rod)
         for i, limit in enumerate(document.limits):
+            if limits is not None and not any(limit is one for one in limits):
+                continue
             try:
-                verdicts.append(_worst(document, limit))
+                verdicts.append(_worst(document, limit, builds))
             except PoiseFileError:
                 raise
             except SpringpoiseError as error:
@@ -176,16 +212,19 @@ def judge(document: PoiseFile) -> CheckReport:
     return CheckReport(document.called, tuple(verdicts), tuple(dict.fromkeys(said)))
 
 
-def _worst(document: PoiseFile, limit: Limit) -> LimitVerdict:
+def _worst(document: PoiseFile, limit: Limit, builds: Builds | None) -> LimitVerdict:
     """The verdict on a limit, at the worst of its temperatures."""
-    loaded = document.with_payload(limit.payload)
+    payload = limit.payload
+    if isinstance(limit, BuildYield) and builds is not None:
+        payload = builds.tolerances.payload
+    loaded = document.with_payload(payload)
     poses = poses_over(loaded, limit.over)
     verdicts = []
     for temperature in limit.at_temperature or (None,):
         mechanism = loaded
         if temperature is not None:
             mechanism = at_temperature(loaded, temperature, document.service)
-        case = Case(mechanism, document.actuator, poses, limit.payload, temperature, document.service)
+        case = Case(mechanism, document.actuator, poses, payload, temperature, document.service, builds)
         with np.errstate(all="ignore"):
             verdicts.append(limit.judge(case))
     return min(verdicts, key=lambda one: -math.inf if math.isnan(one.margin) else one.margin)

@@ -11,8 +11,15 @@ import numpy as np
 from numpy.typing import NDArray
 
 from springpoise.errors import InputError
-from springpoise.guard.amounts import JSON_SUFFIX, finite_or_none, percent, shown
-from springpoise.guard.check import document_at
+from springpoise.guard.amounts import (
+    JSON_SUFFIX,
+    finite_or_none,
+    percent,
+    shown,
+    text_of_share,
+    text_of_torque_or_share,
+)
+from springpoise.guard.check import builds_of, document_at
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.joints import (
     JointPose,
@@ -25,11 +32,12 @@ from springpoise.guard.joints import (
     shown_pose,
 )
 from springpoise.guard.limits import coordinate_unit
+from springpoise.guard.tolerances import Tolerances
 from springpoise.mechanism import Mechanism
 from springpoise.mechanism.travel import joint_units_of
 from springpoise.tables import grid
 
-__all__ = ["Change", "Comparison", "compare"]
+__all__ = ["Change", "Comparison", "TextChange", "compare"]
 
 
 @attrs.frozen
@@ -64,6 +72,27 @@ class Change:
 
 
 @attrs.frozen
+class TextChange:
+    """One thing that both versions state in words."""
+
+    what: str
+    """What it is."""
+    old: str | None
+    """What the old version states; None for nothing."""
+    new: str | None
+    """What the new version states; None for nothing."""
+
+    def to_dict(self) -> dict[str, Any]:
+        """Ready for JSON."""
+        return {"what": self.what, "old": self.old, "new": self.new}
+
+    def __str__(self) -> str:
+        if self.old is None:
+            return f"{self.what}: {self.new}, new"
+        return f"{self.what}: {self.old}, gone" if self.new is None else f"{self.what}: {self.old}, now {self.new}"
+
+
+@attrs.frozen
 class Comparison:
     """Two versions of a mechanism side by side."""
 
@@ -89,6 +118,8 @@ class Comparison:
     """Joint whose torque it is, where there are several."""
     shift_unit: str = "N*m"
     """Its unit."""
+    tolerance_changes: tuple[TextChange, ...] = ()
+    """What is stated otherwise in the tolerances."""
 
     @property
     def changed(self) -> tuple[Change, ...]:
@@ -111,6 +142,7 @@ class Comparison:
                 if isinstance(self.shift_at, JointPose)
                 else {"shift_at_rad": self.shift_at}
             ),
+            "tolerance_changes": [change.to_dict() for change in self.tolerance_changes],
         }
 
     def _range_dict(self) -> dict[str, Any]:
@@ -139,6 +171,7 @@ class Comparison:
                 *balance,
                 f"  holding torque{of} moved by at most {shown(self.shift, self.shift_unit)}, "
                 f"at {shown_pose(self.shift_at)}",
+                *(f"  tolerances, {change}" for change in self.tolerance_changes),
             ]
         )
 
@@ -197,6 +230,8 @@ def compare(
     with np.errstate(all="ignore"):
         ours, theirs = _figures(a, q), _figures(b, q)
         moved = np.abs(b.holding_torque(q) - a.holding_torque(q)).reshape(len(q), len(joints))
+        ours |= _yields(documents[0])
+        theirs |= _yields(documents[1])
     at, joint = np.unravel_index(int(np.argmax(moved)), moved.shape)
     names = [*ours, *(name for name in theirs if name not in ours)]
     changes = []
@@ -216,7 +251,39 @@ def compare(
         shift_at=pose_at(a, q, int(at)),
         shift_joint=joints[joint] if len(joints) > 1 else "",
         shift_unit=force_unit(joint_units_of(a.linkage)[joint]),
+        tolerance_changes=_stated_otherwise(documents[0].tolerances, documents[1].tolerances),
     )
+
+
+def _yields(document: PoiseFile) -> dict[str, tuple[float | None, str]]:
+    """What a document's own tolerances make of it, on its own travel and with the payload that they name."""
+    if document.design is not None:  # its springs are still to be found
+        return {}
+    builds = builds_of(document)
+    return {} if builds is None else {"yield, by its own tolerances": (builds.share, "1")}
+
+
+def _stated_otherwise(old: Tolerances | None, new: Tolerances | None) -> tuple[TextChange, ...]:
+    """What differs between two versions' tolerances, in words."""
+    ours, theirs = _stated(old), _stated(new)
+    names = [*ours, *(name for name in theirs if name not in ours)]
+    changes = (TextChange(name, ours.get(name), theirs.get(name)) for name in names)
+    return tuple(change for change in changes if change.old != change.new)
+
+
+def _stated(tolerances: Tolerances | None) -> dict[str, str]:
+    if tolerances is None:
+        return {}
+    stated = {
+        "residual limit": text_of_torque_or_share(tolerances.residual_limit),
+        "payload": tolerances.payload or "none",
+        **{name: str(getattr(tolerances, name)) for name in ("builds", "seed", "poses", "adjusted_builds")},
+        "coverage": str(text_of_share(tolerances.coverage)),
+    }
+    stated |= {f"spread of {one.field}": str(one) for one in tolerances.spreads}
+    if tolerances.adjusters is not None:
+        stated |= {f"adjuster {one.label}": str(one) for one in tolerances.adjusters}
+    return {name.replace("_", " ") if name == "adjusted_builds" else name: text for name, text in stated.items()}
 
 
 def _common(a: Mechanism, b: Mechanism) -> Any:

@@ -10,12 +10,16 @@ import attrs
 from springpoise import units
 from springpoise.errors import InputError, InputTypeError
 from springpoise.feedforward import Actuator
+from springpoise.guard.build_yield import BuildYield
 from springpoise.guard.joints import JointRanges, joint_names
 from springpoise.guard.limits import JointLimit, Limit
+from springpoise.guard.methods import check_compare
 from springpoise.guard.openings import OpenSpring
 from springpoise.guard.place import nearest
 from springpoise.guard.requests import DesignRequest
 from springpoise.guard.service import Service
+from springpoise.guard.tolerance_fields import check_tolerances
+from springpoise.guard.tolerances import Tolerances
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
 
@@ -128,6 +132,8 @@ class PoiseFile:
     """Named payloads, none of which is on the mechanism."""
     limits: tuple[Limit, ...] = attrs.field(default=(), converter=_tuple)
     """What the mechanism has to keep."""
+    tolerances: Tolerances | None = None
+    """How the parts scatter from build to build; None for not stated."""
     design: DesignRequest | None = None
     """What is to be found, and how; None for a mechanism that is complete."""
     open_springs: tuple[OpenSpring, ...] = attrs.field(default=(), converter=_tuple)
@@ -170,6 +176,7 @@ class PoiseFile:
         for where, wanted in [
             *((f"limits[{i + 1}]", limit.payload) for i, limit in enumerate(self.limits)),
             ("design", None if self.design is None else self.design.payload),
+            ("tolerances", None if self.tolerances is None else self.tolerances.payload),
         ]:
             if wanted is not None and wanted not in names:
                 raise InputError(
@@ -199,6 +206,31 @@ class PoiseFile:
                     f"limits[{i + 1}].spring must be the name of a spring, got {spring!r}{nearest(spring, called)}"
                 )
         OpenSpring.check(self.open_springs, self.design)
+        self._check_tolerances()
+        check_compare(self.design, mounts, self.open_springs)
+
+    def _check_tolerances(self) -> None:
+        """Whether tolerances and the limits that need them fit the mechanism."""
+        stated = self.tolerances
+        if stated is not None:
+            _kind(stated, Tolerances, "tolerances")
+            check_tolerances(stated, self.with_payload(stated.payload), self.design, self.all_mounts)
+        for i, limit in enumerate(self.limits):
+            if not isinstance(limit, BuildYield):
+                continue
+            if stated is None:
+                raise InputError(
+                    f"limits[{i + 1}].what is {limit.what!r}, which needs a table [tolerances] that says how the parts "
+                    "scatter"
+                )
+            if limit.adjuster is None:
+                continue
+            known = [one.label for one in stated.adjusters or ()]
+            if stated.adjuster(limit.adjuster) is None:
+                raise InputError(
+                    f"limits[{i + 1}].adjuster must be the name of one of tolerances.adjusters, got {limit.adjuster!r}"
+                    f"{nearest(limit.adjuster, known)}"
+                )
 
     def with_payload(self, name: str | None) -> Mechanism:
         """The mechanism with a named payload on it; as it is for None.

@@ -21,6 +21,7 @@ FIELD_UNITS: Mapping[str, str] = {
     "LifeTable.pairs": "1",
     "ExtensionCoil.initial_tension": "N",
     "TorsionCoil.legs": "m",
+    "MethodAssumptions.rubber_stretch": "1",
     "SpatialLink.axis": "1",
     "SpatialLink.limits": "rad",
 }

@@ -99,19 +99,21 @@ def shown_pose(at: Pose) -> str:
     return str(at) if isinstance(at, JointPose) else shown(at, "rad")
 
 
-def poses_over(mechanism: Mechanism, over: Any = None) -> Array:
+def poses_over(mechanism: Mechanism, over: Any = None, count: int | None = None) -> Array:
     """The poses to judge: evenly spaced over one joint, spread through the box of several, with its corners.
 
     Parameters
     ----------
     over
         A range, or :class:`JointRanges`; None for the travel.
+    count
+        How many, corners apart; None for as many as limits are judged at.
     """
     ranges = over.ranges if isinstance(over, JointRanges) else over
     ranged = mechanism if ranges is None else attrs.evolve(mechanism, travel=ranges)
     if ranged.linkage.joint_count == 1:
-        return ranged.poses(POSES)
-    inside = ranged.poses(POSES_OF_SEVERAL)
+        return ranged.poses(POSES if count is None else count)
+    inside = ranged.poses(POSES_OF_SEVERAL if count is None else count)
     if ranged.linkage.joint_count > MOST_JOINTS_WITH_CORNERS:
         return inside
     return np.concatenate([inside, np.array(list(itertools.product(*ranged.travel_or_turn)), dtype=np.float64)])

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from springpoise.guard.build_yield import BuildYield
 from springpoise.guard.limits import (
     BalanceAngles,
     HoldingTorque,
@@ -46,6 +47,7 @@ LIMITS = Family(
             FatigueMargin,
             BucklingMargin,
             ServiceTemperature,
+            BuildYield,
         )
     },
 )

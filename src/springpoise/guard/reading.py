@@ -21,6 +21,7 @@ from springpoise.guard.models import Family, fields_of, kind_of, read_kind, read
 from springpoise.guard.openings import OPEN, ROOM, STAND_INS, OpenSpring
 from springpoise.guard.place import Place
 from springpoise.guard.service import Service
+from springpoise.guard.tolerances import Tolerances
 from springpoise.mechanism import Friction, Mechanism, SpringMount
 from springpoise.paths import JointTravel
 
@@ -42,6 +43,7 @@ SECTIONS = (
     "payloads",
     "actuator",
     "limits",
+    "tolerances",
     "design",
 )
 
@@ -141,6 +143,9 @@ def document_of(tables: Mapping[str, Any], place: Place, *, path: Path | None, s
             read_kind(LIMITS, table, at, REGISTRY)
             for at, table in place.key("limits").entries(tables.get("limits", []))
         ],
+        "tolerances": read_model(Tolerances, tables["tolerances"], place.key("tolerances"), REGISTRY)
+        if "tolerances" in tables
+        else None,
         "design": read_kind(DESIGNS, tables["design"], place.key("design"), REGISTRY) if "design" in tables else None,
     }
     try:
@@ -250,6 +255,8 @@ def tables_of(document: PoiseFile) -> dict[str, Any]:
     tables |= {name: entries for name, entries in lists.items() if entries}
     if document.actuator is not None:
         tables["actuator"] = each_or_all_tables(document.actuator, REGISTRY)
+    if document.tolerances is not None:
+        tables["tolerances"] = write_model(document.tolerances, REGISTRY)
     if document.design is not None:
         tables["design"] = write_kind(document.design, REGISTRY, DESIGNS)
     return tables

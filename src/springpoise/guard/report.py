@@ -19,6 +19,8 @@ from springpoise.guard.figures import (
     rests_alone,
     spring_figures,
 )
+from springpoise.guard.methods import standing
+from springpoise.guard.methods_report import methods_dict, methods_text
 from springpoise.guard.safety import CAUTION
 from springpoise.tables import facts, grid, number
 
@@ -59,7 +61,11 @@ def design_text(found: Design) -> str:
     blocks.append(_headed(f"Residual torque over {travel}, {load}, friction left out", _residuals(found)))
     if found.solved is not None:
         blocks += _solved_blocks(found)
+    if found.study is not None:
+        blocks.append(str(found.study))
     blocks += _search_blocks(found)
+    if found.methods is not None:
+        blocks.append(methods_text(found.methods, _standing(found), load))
     blocks.append(_wrapped(f"Caution: {CAUTION}", ""))
     return "\n\n".join(blocks)
 
@@ -250,6 +256,16 @@ def _ranking(candidates: Iterable[StockCandidate], chosen: StockCandidate | None
     return grid([*header, *heads], lines)
 
 
+def _standing(found: Design) -> str:
+    """Where the design stands among the methods, if it compares any."""
+    if found.methods is None:
+        return ""
+    if found.solved is not None:
+        return standing(found.methods, found.solved.mechanism.springs, found.after)
+    route = getattr(found.document.design, "pulley", None)
+    return standing(found.methods, "straight" if route is None else "pulley", None) if found.search else ""
+
+
 def _headed(heading: str, body: str) -> str:
     return f"{heading}\n{body}".rstrip("\n")
 
@@ -295,6 +311,10 @@ def design_dict(found: Design) -> dict[str, Any]:
             "actuator": [one.to_dict() for one in hold_figures(solved, q)],
             "limits": None if found.report is None else found.report.to_dict(),
         }
+    if found.study is not None:
+        answer["tolerances"] = found.study.to_dict()
+    if found.methods is not None:
+        answer["compare"] = methods_dict(found.methods, _standing(found))
     if found.search is not None:
         search = found.search
         answer |= {

@@ -13,6 +13,7 @@ from springpoise import units
 from springpoise.balance import PulleyRoute
 from springpoise.errors import InputError
 from springpoise.guard.amounts import OfPeak, text_of_torque_or_share, torque_or_share
+from springpoise.guard.methods import MethodsRequest
 
 __all__ = ["DesignRequest", "FitRequest", "SineRequest", "Steps", "StockRequest"]
 
@@ -98,6 +99,8 @@ class DesignRequest:
     """Name of the payload that is on the arm while it is balanced; None for none."""
     poses: int = attrs.field(default=181, converter=_poses)
     """How many evenly spaced poses over the travel are looked at."""
+    compare: MethodsRequest | None = None
+    """Ways of balancing to be put beside the design; None for none."""
 
 
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)

@@ -11,6 +11,7 @@ import numpy as np
 
 from springpoise import units
 from springpoise.balance import (
+    MethodComparison,
     Residual,
     StockCandidate,
     StockSearch,
@@ -20,13 +21,17 @@ from springpoise.balance import (
     search_stock,
     sine_match,
 )
-from springpoise.errors import InputError, NoSolution, PoiseFileError
+from springpoise.errors import InputError, NoSolution, PoiseFileError, SpringpoiseError
 from springpoise.guard.amounts import OfPeak
-from springpoise.guard.check import CheckReport, document_at, judge
+from springpoise.guard.builds import Builds
+from springpoise.guard.check import CheckReport, builds_of, document_at, judge, keeps_all
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.files import read_bytes
+from springpoise.guard.methods import compared
 from springpoise.guard.openings import OpenSpring
 from springpoise.guard.requests import FitRequest, SineRequest, StockRequest
+from springpoise.guard.study import ToleranceStudy, study_of
+from springpoise.guard.tolerance_fields import kept_fields
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.paths import Cable
@@ -58,6 +63,10 @@ class Design:
     """The stock search, where it was one."""
     chosen: StockCandidate | None = None
     """The candidate of the search that was taken: the first in rank that keeps all limits, else the first."""
+    methods: MethodComparison | None = None
+    """Ways of balancing side by side, where the design asks for them."""
+    study: ToleranceStudy | None = None
+    """What the stated tolerances do to the solved mechanism; None where none are stated, or nothing fits."""
     status: str
     """One sentence on what was found."""
 
@@ -134,11 +143,13 @@ def design(document: PoiseFile | str | os.PathLike[str], *, progress: Any = Fals
         with np.errstate(all="ignore"):
             before = residual(loaded, loaded.poses(request.poses))
             if isinstance(request, StockRequest):
-                return _from_stock(given, request, loaded, before, progress)
-            if isinstance(request, SineRequest):
-                return _by_sine(given, request, loaded, before)
-            assert isinstance(request, FitRequest)
-            return _by_fit(given, request, before)
+                found = _from_stock(given, request, loaded, before, progress)
+            elif isinstance(request, SineRequest):
+                found = _by_sine(given, request, loaded, before)
+            else:
+                assert isinstance(request, FitRequest)
+                found = _by_fit(given, request, before)
+            return attrs.evolve(found, methods=compared(request, loaded))
     except PoiseFileError:
         raise
     except InputError as error:
@@ -170,15 +181,20 @@ def _from_stock(given: PoiseFile, request: StockRequest, loaded: Mechanism, befo
             document=given, solved=None, before=before, after=None, report=None, search=search, status=search.status
         )
     tried = [(one, _with_mounts(given, _to_drill(one, request.resolution))) for one in search.candidates]
-    keeping = [pair for pair in tried if not judge(pair[1]).failures]
-    chosen, solved = (keeping or tried)[0]
-    rank = search.candidates.index(chosen) + 1
+    builds: list[Builds | None] = []
+    keeping = None
+    for rank, (_, solved) in enumerate(tried):
+        builds.append(builds_of(solved))
+        if keeps_all(solved, builds[-1]):
+            keeping = rank
+            break
+    chosen, solved = tried[keeping or 0]
     status = f"{chosen.count} x {chosen.part}, rank 1 of {len(search.candidates)}"
-    if keeping and rank > 1:
-        status = f"{chosen.count} x {chosen.part}, rank {rank}: the first that keeps all limits"
-    elif not keeping and given.limits:
+    if keeping:
+        status = f"{chosen.count} x {chosen.part}, rank {keeping + 1}: the first that keeps all limits"
+    elif keeping is None and given.limits:
         status += "; none of them keeps all limits"
-    return _finished(given, solved, before, status, search=search, chosen=chosen)
+    return _finished(given, solved, before, status, builds[keeping or 0], search=search, chosen=chosen)
 
 
 def _to_drill(candidate: StockCandidate, step: float) -> list[SpringMount]:
@@ -212,7 +228,8 @@ def _by_sine(given: PoiseFile, request: SineRequest, loaded: Mechanism, before: 
         anchor_angle=request.anchor_angle,
         count=request.count,
     )
-    return _finished(given, _with_mounts(given, found.mechanism.springs), before, found.status)
+    solved = _with_mounts(given, found.mechanism.springs)
+    return _finished(given, solved, before, found.status, builds_of(solved))
 
 
 def _by_fit(given: PoiseFile, request: FitRequest, before: Residual) -> Design:
@@ -228,8 +245,13 @@ def _by_fit(given: PoiseFile, request: FitRequest, before: Residual) -> Design:
     if not found.mechanism.springs or len(found.left_out) == len(opened):
         return Design(document=given, solved=None, before=before, after=None, report=None, status=found.status)
     left_out = f"; best left out: {', '.join(found.left_out)}" if found.left_out else ""
-    solved = _with_mounts(given, found.mechanism.springs)
-    return _finished(given, solved, before, found.status + left_out)
+    names = [whole.mount_name(i) for i in range(len(whole.springs))]
+    kept = [i for i, name in enumerate(names) if name not in found.left_out]
+    tolerances = given.tolerances
+    if tolerances is not None and len(kept) < len(names):
+        tolerances = tolerances.with_springs_kept(kept_fields(tolerances, whole, kept))
+    solved = _with_mounts(attrs.evolve(given, tolerances=tolerances), found.mechanism.springs)
+    return _finished(given, solved, before, found.status + left_out, builds_of(solved))
 
 
 def _with_mounts(given: PoiseFile, mounts: Any) -> PoiseFile:
@@ -238,15 +260,24 @@ def _with_mounts(given: PoiseFile, mounts: Any) -> PoiseFile:
     return attrs.evolve(given, mechanism=filled, design=None, open_springs=(), path=None)
 
 
-def _finished(given: PoiseFile, solved: PoiseFile, before: Residual, status: str, **others: Any) -> Design:
+def _finished(
+    given: PoiseFile, solved: PoiseFile, before: Residual, status: str, builds: Builds | None, **others: Any
+) -> Design:
     assert given.design is not None
     loaded = solved.with_payload(given.design.payload)
+    study = None
+    if builds is not None:
+        try:
+            study = study_of(builds)
+        except SpringpoiseError as error:
+            raise PoiseFileError(f"{given.called}: tolerances: {error}") from error
     return Design(
         document=given,
         solved=solved,
         before=before,
         after=residual(loaded, loaded.poses(given.design.poses)),
-        report=judge(solved),
+        report=judge(solved, builds),
+        study=study,
         status=status,
         **others,
     )

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import attrs
 import numpy as np
@@ -15,6 +15,9 @@ from springpoise.guard.joints import JointPose, Pose, joint_names, pose_at, show
 from springpoise.guard.service import Service
 from springpoise.mechanism import Mechanism
 from springpoise.mechanism.travel import joint_units_of
+
+if TYPE_CHECKING:
+    from springpoise.guard.builds import Builds
 
 __all__ = ["Case", "LimitVerdict", "broken", "greatest", "judged", "least"]
 
@@ -37,6 +40,8 @@ class Case:
     """Temperature of the springs [K]; None for that of their values."""
     service: tuple[Service, ...] = ()
     """What is known of the springs in service."""
+    builds: Builds | None = None
+    """Builds with the scatter that the file states; None where it states none."""
 
     @property
     def shape(self) -> tuple[int]:
@@ -87,6 +92,8 @@ class LimitVerdict:
     """What the value is of where that is not plain, such as a spring's or a joint's name."""
     joint: str = ""
     """Joint or pivot whose value it is, where there are several."""
+    adjuster: str = ""
+    """What was adjusted in each build, where that was asked for."""
     sentence: str = ""
     """All of this in words."""
 
@@ -105,6 +112,7 @@ class LimitVerdict:
             "temperature_K": finite_or_none(self.temperature),
             "about": self.about,
             **({"joint": self.joint} if self.joint else {}),
+            **({"adjuster": self.adjuster} if self.adjuster else {}),
             "sentence": self.sentence,
         }
 
@@ -140,6 +148,7 @@ def judged(
     at_least: bool = False,
     about: str = "",
     joint: str = "",
+    adjuster: str = "",
     subject: str = "",
     also: str = "",
     hint: str = "is an end of a cable inside a disc there, or a value far too large?",
@@ -152,6 +161,8 @@ def judged(
         What the value is of, such as a spring's name.
     joint
         The joint or pivot that it is of, where there are several.
+    adjuster
+        What was adjusted in each build.
     subject
         What the sentence begins with; by default ``what``.
     also
@@ -184,6 +195,7 @@ def judged(
         temperature=case.temperature,
         about=about,
         joint=joint,
+        adjuster=adjuster,
         sentence=sentence,
     )
 
