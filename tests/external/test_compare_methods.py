@@ -14,7 +14,7 @@ import math
 import numpy as np
 import pytest
 
-from springpoise import Arm, Body, Friction, Mechanism
+from springpoise import Arm, Body, Friction, Mechanism, balance
 from springpoise.balance.methods.assumptions import MethodAssumptions
 from springpoise.balance.methods.compare import METHODS, compare_methods
 
@@ -168,10 +168,48 @@ def test_the_spool_conserves_energy(everything):
     state = row.mechanism.spring_states(q)[0]
     spring = row.mechanism.springs[0].spring
     stretch = state.length - spring.free_length
-    assert stretch.min() / stretch.max() == pytest.approx(0.3, rel=1e-9)
+    assert 0.1 < stretch.min() / stretch.max() < 0.3  # at 0.3 the line would be hollow
     assert spring.initial_tension / state.load.max() == pytest.approx(0.1, rel=1e-9)
     assert spring.free_length / state.length.max() == pytest.approx(0.5, rel=1e-9)
     assert np.abs(row.mechanism.springs[0].path.moment_radii).max() == pytest.approx(0.12, rel=1e-12)
+
+
+@pytest.mark.parametrize(
+    ("low", "high"), [(-60, 60), (-60, 80), (-60, 89), (-60, 90), (-85, 20), (90, 240), (130, 240)]
+)
+def test_a_cable_can_wind_on_the_spool(low, high):
+    """Radius of curvature p + p'' by differences of a support function that is sampled anew, and by the spool's own solver."""
+    ends = math.radians(low), math.radians(high)
+    arm = Mechanism(Arm(Body(MASS, (COM, 0.0))), travel=ends)
+    row = compare_methods(arm, over=arm.poses(31), methods="spool", **BOX).row("spool").require()
+    mount = row.mechanism.springs[0]
+    q = np.linspace(*ends, 2001)[1:-1]
+    load = mount.spring.load(mount.path.length(arm.linkage, q))
+    step = 1e-4
+    p = [
+        np.abs(G * np.cos(q + i * step) / mount.spring.load(mount.path.length(arm.linkage, q + i * step)))
+        for i in (-1, 0, 1)
+    ]
+    inner = (q > ends[0] + 0.02) & (q < ends[1] - 0.02) & (load > 0.05 * load.max())
+    assert np.all((p[1] + (p[0] - 2 * p[1] + p[2]) / step**2)[inner] > 0.0)
+    top = ends[1] if high <= 90 else ends[0]
+    length = max(float(mount.path.length(arm.linkage, top)), mount.spring.free_length)
+    shaped = balance.shape_spool(
+        arm, mount.spring, leaves=0.0, cable_diameter=0.0, start_length=length, start_angle=top
+    )
+    assert shaped.success
+    assert np.max(np.abs(shaped.moment_radii)) == pytest.approx(0.12, rel=1e-6)
+
+
+def test_a_preload_that_would_make_the_line_hollow_is_lowered():
+    """The closed form of a preloaded spool says where it is convex; at the assumed 0.3 it would not be up to 60 deg."""
+    spool = compare_methods(ARM, over=ARM.poses(31), methods="spool", **BOX).row("spool").require()
+    spring = spool.mechanism.springs[0].spring
+    x = spool.mechanism.spring_states(ARM.poses(31))[0].length
+    least = spring.load(float(x.min())) / spring.rate  # stretch beyond the unloaded length at 60 deg
+    # Preload energy referred to the upright: k x0^2 = k least^2 - 2 G (1 - cos 30 deg).
+    square = least**2 - 2.0 * G * (1.0 - math.cos(math.radians(30.0))) / spring.rate
+    assert square < 0.0 or balance.convex_beyond(2.0 * G / (spring.rate * square)) <= math.radians(30.0)
 
 
 def test_assumed_properties_are_kept(everything):
@@ -219,7 +257,7 @@ def test_an_arm_on_the_other_side_is_balanced_as_well():
     other = compare_methods(left, over=left.poses(31), **BOX)
     for method in METHODS:
         mine, theirs = (found.row(method).figures.residual.worst_fraction for found in (one, other))
-        assert mine == pytest.approx(theirs, rel=0.05, abs=2e-3), method
+        assert mine == pytest.approx(theirs, rel=1e-3 if method == "torsion" else 0.05, abs=2e-3), method
 
 
 def test_an_arm_that_swings_to_both_sides_has_two_rollers():

@@ -15,7 +15,7 @@ from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.springs import CompressionSpring, ExtensionSpring, ScaledSpring, TorsionSpring, ZeroLengthSpring
 from springpoise.tables import degrees
 
-__all__ = ["Found", "best_amounts"]
+__all__ = ["Found", "best_amounts", "preloads", "solved_shares"]
 
 Array = NDArray[np.float64]
 
@@ -28,11 +28,17 @@ STARTS = 9
 NOTHING = 1e-9
 """A spring whose share of the holding torque is nowhere more than this [1] is best left out."""
 
+ROUNDING = 1e-13
+"""A torque below this share of its parts [1] is none: the mechanism is balanced already."""
+
 SOFTEST = 1e-6
 """Least share of a spring whose initial tension stays [1]: it cannot have tension and no rate."""
 
+MOST_WOUND = 4.0 * math.pi
+"""A torsion spring is wound or unwound by no more than two turns [rad]."""
+
 WIDEST_ANGLE = 12.5
-"""A torsion spring's free angle stays within this of zero [rad], just below two turns."""
+"""Its free angle stays within this of zero [rad], just below two turns: greater ones are taken for degrees."""
 
 
 class Found(NamedTuple):
@@ -100,11 +106,15 @@ class _Task:
     preload: str
     target: Array = attrs.field(init=False)
     """Holding torque without the mounts that are fitted [N·m], shape (poses,)."""
+    parts: float = attrs.field(init=False)
+    """Greatest torque among those that it is the sum of [N·m]: what its rounding is measured with."""
 
     def __attrs_post_init__(self) -> None:
         held = self.mechanism.with_springs([m for i, m in enumerate(self.mechanism.springs) if i not in self.free])
         torque = np.broadcast_to(held.holding_torque(self.q), self.q.shape)
         object.__setattr__(self, "target", self._finite(torque, "mechanism.holding_torque"))
+        pulled = np.abs(np.broadcast_to(held.gravity_torque(self.q), self.q.shape))
+        object.__setattr__(self, "parts", float(max(np.max(pulled), np.max(np.abs(torque)))))
 
     def best_of(self, mounts: dict[int, SpringMount]) -> Found:
         """The best fit of these mounts, the other free ones being left out, from all starts."""
@@ -128,7 +138,7 @@ class _Task:
             rays = np.array([[1.0, 1.0], self._rigid_lengths(mount)])
         elif self.preload == "spring" and isinstance(spring, TorsionSpring):
             # Any free angle between two is a mixture of them.
-            rays = np.array([[1.0, 1.0], [WIDEST_ANGLE, -WIDEST_ANGLE]])
+            rays = np.array([[1.0, 1.0], preloads(x)])
         else:
             unit = np.eye(len(terms))
             rays = np.concatenate([unit, -unit[:, np.asarray(parts.may_be_negative, dtype=bool)]], axis=1)
@@ -177,7 +187,9 @@ class _Task:
     def _tuned(self, mounts: dict[int, SpringMount], columns: dict[int, _Columns]) -> dict[int, SpringMount]:
         """The mounts with their best amounts, without those that are best left out."""
         rest = self.target + sum(c.fixed for c in columns.values())
-        size = float(np.max(np.abs(rest))) or 1.0
+        size = float(np.max(np.abs(rest)))
+        if size <= ROUNDING * self.parts:
+            return {}
         matrix = np.concatenate([c.terms @ c.rays for c in columns.values()], axis=1) / size
         scales = np.max(np.abs(matrix), axis=0)
         scales[scales == 0] = 1.0
@@ -216,6 +228,13 @@ class _Task:
                 "is an end of a cable inside a disc there?"
             )
         return values
+
+
+def preloads(x: Array) -> tuple[float, float]:
+    """Greatest and least torque at angle zero of a torsion spring of rate one that takes the angles ``x`` [rad]."""
+    lowest = max(float(np.max(x)) - MOST_WOUND, -WIDEST_ANGLE)
+    highest = min(float(np.min(x)) + MOST_WOUND, WIDEST_ANGLE)
+    return -min(lowest, highest), -max(lowest, highest)
 
 
 def solved_shares(matrix: Array, goal: Array, norm: str) -> Array:

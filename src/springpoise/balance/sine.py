@@ -27,6 +27,10 @@ from springpoise.units import ScalarLike
 __all__ = ["SineMatch", "as_mechanism", "sine_match"]
 
 
+ROUNDING = 4e-16
+"""Share of a place's distance by which a sine or cosine of a quarter turn misses zero [1]."""
+
+
 @attrs.frozen
 class SineMatch:
     """A spring of zero free length that balances an arm at every angle."""
@@ -159,10 +163,11 @@ def sine_match(
         k = abs(lacking) / (count * abs(a) * b)
     if a is None:
         a = abs(lacking) / (count * k * b)
-    anchor = a * cmath.exp(1j * direction)
+    anchor = _without_rounding(a * cmath.exp(1j * direction))
     attach = lacking / (count * k * anchor.conjugate())
     if b is not None:  # given or solved for, the two agree; keep the digits that were given
         attach *= b / abs(attach)
+    attach = _without_rounding(attach)
     mount = SpringMount(
         ZeroLengthSpring(k),
         Straight(Point("ground", (anchor.real, anchor.imag)), Point("arm", (attach.real, attach.imag))),
@@ -179,6 +184,13 @@ def sine_match(
         count=count,
         residual=residual(balanced),
     )
+
+
+def _without_rounding(place: complex) -> complex:
+    """A place on one of the axes, where it misses that by rounding."""
+    least = ROUNDING * abs(place)
+    x, y = (0.0 if abs(part) <= least else part for part in (place.real, place.imag))
+    return complex(x, y)
 
 
 def as_mechanism(arm: Any) -> Mechanism:

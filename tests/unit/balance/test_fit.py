@@ -221,9 +221,20 @@ def test_a_torsion_spring_that_ought_to_be_softer_than_can_be():
     for norm in ("minimax", "rms"):
         fit = balance.fit_springs(mech, norm=norm)
         spring = fit.mechanism.springs[0].spring
-        assert spring.rate > 0 and spring.free_angle == pytest.approx(12.5)
+        assert spring.rate > 0 and spring.free_angle == pytest.approx(4 * math.pi - 1.5)
         assert fit.residual.worst < 0.65 * G
-        assert re.search(r"TorsionSpring: rate 0.\d+ N\*m/rad, free angle 12.50 rad", str(fit))
+        assert re.search(r"TorsionSpring: rate 0.\d+ N\*m/rad, free angle 11.07 rad", str(fit))
+
+
+def test_a_mirrored_arm_has_the_mirrored_torsion_spring():
+    """Mirrored at the vertical, q goes to pi - q: the same rate, and the free angle likewise."""
+    right = balance.fit_springs(_mech(SpringMount(TorsionSpring(1.0), JointTravel()), travel=(-1.0, 1.0)))
+    left = balance.fit_springs(
+        _mech(SpringMount(TorsionSpring(1.0), JointTravel()), travel=(math.pi - 1.0, math.pi + 1.0))
+    )
+    here, there = (fit.mechanism.springs[0].spring for fit in (right, left))
+    assert there.rate == pytest.approx(here.rate, rel=1e-9)
+    assert there.free_angle == pytest.approx(math.pi - here.free_angle, rel=1e-9)
 
 
 def test_a_constant_force_spring():

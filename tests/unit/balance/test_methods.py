@@ -34,6 +34,14 @@ def _compare(arm=ARM, **options):
             InputError,
             r"attach_skew must be bounds \(least, greatest\) rad, got \(0.2, 0.1\)",
         ),
+        (
+            {"attach_skew": (-20, 20)},
+            InputError,
+            r"attach_skew must be within a quarter turn, .* got \(-20.0, 20.0\); degrees",
+        ),
+        ({"warming": "20 degC"}, InputError, "warming must be a difference of temperatures in K, got '20 degC'"),
+        ({"warming": "36 fahrenheit"}, InputError, "warming must be a difference .* got '36 fahrenheit'"),
+        ({"warming": -300}, InputError, "warming must be above -293.15 K from 293.15 K, got -300.0"),
         ({"payload_change": -1.5}, InputError, "payload_change must be > -1, got -1.5"),
         ({"warming": [1.0, 2.0]}, InputTypeError, r"warming must be a single value in K, got \[1.0, 2.0\]"),
         ({"over": [0.1]}, InputError, "over must be at least two different poses in rad, got 1 at 0.1"),
@@ -121,6 +129,11 @@ def test_bare_arms_turn_all_the_way_round():
     found = compare_methods(Arm(Body(2.0, (0.35, 0.0))), **BOX, methods=["counterweight", "spool"])
     assert found.row("counterweight").figures.equilibria.travel == pytest.approx((-math.pi, math.pi))
     assert not found.row("spool").success
+
+
+def test_a_warming_may_be_a_difference_of_any_scale():
+    found = _compare(warming="36 delta_degF", methods="torsion")
+    assert found.warming == pytest.approx(20.0)
 
 
 def test_payload_and_warming_are_columns_of_their_own():

@@ -152,3 +152,14 @@ def test_many_builds_at_once_are_refused():
         InputError, match=r"mechanism must be a single one, got fields that are arrays \(shape \(2, 1\)\)"
     ):
         balance.residual(mech)
+
+
+@pytest.mark.parametrize("quarter", [0, 1, 2, 3])
+def test_places_on_an_axis_are_on_it(quarter):
+    """An anchor straight above has x = 0 and not 6e-18, so that a percentage of it is refused and a drawing says 0."""
+    found = balance.sine_match(
+        Arm(Body(2.0, (0.35, 0.0))), attach_radius=0.08, anchor_height=0.1, anchor_angle=quarter * math.pi / 2
+    )
+    path = found.mechanism.springs[0].path
+    for point in path.ends:
+        assert min(abs(c) for c in point.at) == 0.0

@@ -63,7 +63,7 @@ class MethodAssumptions:
     free_length_ratio: float = attrs.field(default=0.5, converter=units.number, validator=_ratio)
     """Free length of an ordinary extension spring over its greatest length in use [1]."""
     initial_tension_ratio: float = attrs.field(default=0.1, converter=units.number, validator=_share)
-    """Its initial tension over its greatest load in use [1]."""
+    """Its initial tension over its greatest load in use [1]; on a shaped spool none where its line would be hollow."""
     gas_progression: float = attrs.field(default=1.3, converter=units.number, validator=_above_one)
     """Mean force of a gas spring at full compression over that at full extension [1]."""
     gas_pressure: float = attrs.field(default=8e6, converter=units.pascal, validator=units.positive)
@@ -97,7 +97,7 @@ class MethodAssumptions:
     drum_radius: float | None = attrs.field(default=None, converter=units.optional_metre)
     """Radius of the drum of a constant-force spring [m], > 0; None for the least attach radius."""
     spool_stretch_ratio: float = attrs.field(default=0.3, converter=units.number, validator=_ratio)
-    """Least over greatest stretch of the spring on a shaped spool [1]."""
+    """Least over greatest stretch of the spring on a shaped spool [1]; less where its line would be hollow."""
 
     def __attrs_post_init__(self) -> None:
         for name in ("counterweight_radius", "drum_radius"):

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+import re
 from collections.abc import Callable, Sequence
 from typing import Any, Literal
 
@@ -25,6 +27,9 @@ from springpoise.springs.service import ROOM_TEMPERATURE
 from springpoise.units import ScalarLike
 
 __all__ = ["METHODS", "compare_methods"]
+
+OFFSET_SCALES = re.compile(r"(?<!delta_)(deg[CF]\b|degree_?(Celsius|Fahrenheit)|[Cc]elsius|[Ff]ahrenheit|°\s*[CF]|℃|℉)")
+"""Temperatures on a scale that does not begin at nothing, and so no differences."""
 
 METHODS: dict[str, tuple[str, Callable[[Frame], Sized]]] = {
     "pulley": ("spring on pulley", pulley),
@@ -84,11 +89,11 @@ def compare_methods(
         ``"minimax"`` makes the worst residual least, ``"rms"`` its root mean square.
     attach_skew
         Bounds of the angle by which attachments may be turned from where a spring of zero free
-        length would be attached [rad].
+        length would be attached [rad], within a quarter turn.
     assumptions
         Properties of springs, pulleys and rubber; None for usual ones, ``MethodAssumptions()``.
     warming
-        Temperature rise of the column that says what it does to the residual [K].
+        Temperature rise from 293.15 K of the column that says what it does to the residual [K].
     payload_change
         Relative change of the arm's whole weight of the last column [1].
     gravity
@@ -106,7 +111,8 @@ def compare_methods(
     Notes
     -----
     A counterweight and a spring of zero free length balance every angle; torsion, gas and
-    constant-force springs one or two. The inertia is that of the counterweight, and of a straight
+    constant-force springs one or two. Where several geometries balance equally well, as they do behind
+    a pulley, the row is one of them. A torsion spring is wound by two turns at the most. The inertia is that of the counterweight, and of a straight
     spring or tube a third of its mass at the attachment; springs on the ground and at the pivot count
     as none. A counterweight's friction at the pivot is not counted unless the arm states it.
 
@@ -137,7 +143,12 @@ def compare_methods(
         _range(anchor_height, "m", "anchor_height"),
         _range(attach_skew, "rad", "attach_skew"),
     )
-    kelvins = _plain(warming, "K", "warming")
+    if max(map(abs, bounds[2])) > 0.5 * math.pi:
+        raise InputError(
+            f"attach_skew must be within a quarter turn, ±{0.5 * math.pi:.4g} rad, got {bounds[2]}; degrees? "
+            f"write ('{bounds[2][0]:g} deg', '{bounds[2][1]:g} deg')"
+        )
+    kelvins = _kelvins(warming)
     change = _plain(payload_change, "1", "payload_change")
     if not change > -1.0:
         raise InputError(f"payload_change must be > -1, got {change}")
@@ -203,6 +214,17 @@ def _names(methods: Any) -> tuple[str, ...]:
     if not names:
         raise InputError("methods must be at least one method, got none")
     return tuple(dict.fromkeys(names))
+
+
+def _kelvins(warming: Any) -> float:
+    """A difference of temperatures."""
+    text = str(warming) if isinstance(warming, str) or hasattr(warming, "m_as") else ""
+    if OFFSET_SCALES.search(text):
+        raise InputError(f"warming must be a difference of temperatures in K, got {text!r}; 20 degC is 293.15 K")
+    kelvins = _plain(warming, "K", "warming")
+    if not ROOM_TEMPERATURE + kelvins > 0.0:
+        raise InputError(f"warming must be above {-ROOM_TEMPERATURE} K from {ROOM_TEMPERATURE} K, got {kelvins}")
+    return kelvins
 
 
 def _range(value: Any, unit: str, name: str) -> tuple[float, float]:

@@ -194,7 +194,7 @@ def placed(
     q = poses_of_joints(first, over)
     free = () if fit == "none" else _free_mounts(first, fixed)
     raw = sizable(first, free)
-    layout = layout_of(raw, free, fit)
+    layout = layout_of(raw, free, fit, q)
     base = tuple(nominal(raw, layout, q))
     peak = residual_at(first.with_springs(()), q).peak_gravity_torque
     if not peak > 0.0:

@@ -8,15 +8,13 @@ from typing import Any, NamedTuple
 import attrs
 import numpy as np
 
+from springpoise.balance.amounts import preloads
 from springpoise.carriers import Carrier
 from springpoise.errors import InputError
 from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.springs import CompressionSpring, ExtensionSpring, ScaledSpring, TorsionSpring, ZeroLengthSpring
 
 __all__ = ["MountShares", "layout_of", "nominal", "sizable", "with_shares"]
-
-WIDEST_ANGLE = 12.5
-"""A torsion spring's free angle stays within this of zero [rad], just below two turns."""
 
 
 class MountShares(NamedTuple):
@@ -44,18 +42,18 @@ def sizable(mechanism: Mechanism, free: Sequence[int]) -> Mechanism:
     return mechanism.with_springs(mounts)
 
 
-def layout_of(mechanism: Mechanism, free: Sequence[int], fit: str) -> tuple[MountShares, ...]:
-    """The shares of a sizable mechanism's free mounts.
+def layout_of(mechanism: Mechanism, free: Sequence[int], fit: str, q: Any) -> tuple[MountShares, ...]:
+    """The shares of a sizable mechanism's free mounts over the poses ``q``.
 
     Raises
     ------
     InputError
         A rigid length is to be fitted to a spring that has no length.
     """
-    return tuple(_mount_layout(mechanism, i, fit) for i in free)
+    return tuple(_mount_layout(mechanism, i, fit, q) for i in free)
 
 
-def _mount_layout(mechanism: Mechanism, i: int, fit: str) -> MountShares:
+def _mount_layout(mechanism: Mechanism, i: int, fit: str, q: Any) -> MountShares:
     spring: Any = mechanism.springs[i].spring
     if fit == "mount":
         if not isinstance(spring, ZeroLengthSpring | ExtensionSpring | CompressionSpring):
@@ -66,7 +64,7 @@ def _mount_layout(mechanism: Mechanism, i: int, fit: str) -> MountShares:
         either_way = isinstance(spring, CompressionSpring)
         return MountShares(i, ((1.0, 0.0, 0.0), (0.0, 1.0, -1.0)) if either_way else ((1.0, 0.0), (0.0, 1.0)), fit)
     if fit == "spring" and isinstance(spring, TorsionSpring):
-        return MountShares(i, ((1.0, 1.0), (WIDEST_ANGLE, -WIDEST_ANGLE)), fit)
+        return MountShares(i, ((1.0, 1.0), preloads(mechanism.springs[i].spring_length(mechanism.linkage, q))), fit)
     low, high = getattr(spring, "working_range", None) or (0.0, 1.0)
     middle = 0.5 * (float(low) + float(high)) if np.isfinite(high) and np.isfinite(low) else 0.1
     signs = spring.load_terms(middle, preload=fit == "spring").may_be_negative
