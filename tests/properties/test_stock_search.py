@@ -14,6 +14,8 @@ from hypothesis import strategies as st
 
 from springpoise import Arm, Body, Cable, Disc, Mechanism, Point, SpringMount, Straight, balance
 from springpoise.balance import PulleyRoute, Stock
+from springpoise.balance.stock import mounts
+from springpoise.balance.stock.windows import windows
 
 moderate = settings(max_examples=30)
 SLACK, OVER, ROOM, INSIDE, LIMIT = (
@@ -50,31 +52,41 @@ pulleys = st.sampled_from(
         PulleyRoute(radius=0.02, spring_end=(0.05, -0.3), turn="ccw"),
     ]
 )
+directions = st.sampled_from(
+    [([0.5 * math.pi], [0.0]), ([1.2, 1.7], [-0.1]), ([1.4], [-0.2, 0.3]), ([1.3, 2.0], [-0.15, 0.0])]
+)
 TRAVEL = (-0.9, 0.8)
 Q = np.linspace(*TRAVEL, 23)
 
 
-def _mount(arm, spring, count, radius, height, pulley):
+def _mount(arm, spring, count, radius, height, pulley, angle=0.5 * math.pi, skew=0.0):
     """The mount as documented, put together anew."""
     x, y = arm.moment
-    lie = math.atan2(y, x)  # straight gravity and an anchor straight above: the attachment lies towards the com
+    # Straight gravity: with an anchor straight above, the attachment lies towards the com, and turns with the anchor.
+    lie = math.atan2(y, x) + angle - 0.5 * math.pi + skew
     attach = Point("arm", (radius * math.cos(lie), radius * math.sin(lie)))
-    straight = Straight(Point("ground", (0.0, height)), attach)
+    anchor = height * np.array([math.cos(angle), math.sin(angle)])
+    straight = Straight(Point("ground", tuple(anchor.tolist())), attach)
     if pulley is None:
         return SpringMount(spring, straight, count=count)
-    aside = -pulley.radius if pulley.turn == "cw" else pulley.radius
-    disc = Disc(Point("ground", (aside, height)), radius=pulley.radius, turn=pulley.turn)
+    disc = Disc(Point("ground", _centre(height, pulley, angle)), radius=pulley.radius, turn=pulley.turn)
     cable = Cable(Point("ground", pulley.spring_end), disc, attach)
     middle = 0.5 * (TRAVEL[0] + TRAVEL[1])
     zero = cable.length(arm, middle) - straight.length(arm, middle)
     return SpringMount(spring, cable, count=count, rigid_length=zero - spring.effective_free_length)
 
 
-def _room(height, pulley):
+def _centre(height, pulley, angle=0.5 * math.pi):
+    """Centre of a pulley that touches the line from pivot to anchor at the anchor."""
+    aside = -pulley.radius if pulley.turn == "cw" else pulley.radius
+    x, y = math.cos(angle), math.sin(angle)
+    return height * x + aside * y, height * y - aside * x
+
+
+def _room(height, pulley, angle=0.5 * math.pi):
     if pulley is None:
         return math.inf
-    aside = -pulley.radius if pulley.turn == "cw" else pulley.radius
-    away = math.dist((aside, height), pulley.spring_end)
+    away = math.dist(_centre(height, pulley, angle), pulley.spring_end)
     return math.sqrt(away**2 - pulley.radius**2)
 
 
@@ -84,6 +96,8 @@ class Tried:
     count: int
     radius: float
     height: float
+    angle: float
+    skew: float
     worst: float
     pivot: float
     slack: float
@@ -92,25 +106,27 @@ class Tried:
     reason: str | None
 
 
-def _every_candidate(arm, stock, radii, heights, counts, pulley, limit):
+def _every_candidate(arm, stock, radii, heights, counts, pulley, limit, angles, skews):
     mech = Mechanism(arm, travel=TRAVEL)
-    for part, count, radius, height in itertools.product(range(len(stock)), counts, radii, heights):
+    places = itertools.product(range(len(stock)), counts, radii, heights, angles, skews)
+    for part, count, radius, height, angle, skew in places:
         spring = stock.spring(part)
-        mount = _mount(arm, spring, count, radius, height, pulley)
+        where = (part, count, radius, height, angle, skew)
+        mount = _mount(arm, spring, count, radius, height, pulley, angle, skew)
         length = mount.spring_length(arm, Q)
         if not np.all(np.isfinite(length)):
             assert pulley is not None
-            yield Tried(part, count, radius, height, math.nan, math.nan, math.nan, math.nan, math.nan, INSIDE)
+            yield Tried(*where, math.nan, math.nan, math.nan, math.nan, math.nan, INSIDE)
             continue
         one = mech.with_springs(mount)
         worst = float(np.max(np.abs(one.holding_torque(Q))))
         slack, over = spring.free_length - length.min(), length.max() - spring.longest
-        room = length.max() - _room(height, pulley)
+        room = length.max() - _room(height, pulley, angle)
         # A candidate on the very edge would be decided by rounding.
         assume(min(abs(slack), abs(over), abs(room), abs(worst - limit)) > 1e-12)
         reason = SLACK if slack >= 0 else OVER if over > 0 else ROOM if room > 0 else LIMIT if worst > limit else None
         pivot = float(np.max(one.pivot_load(Q)))
-        yield Tried(part, count, radius, height, worst, pivot, slack, over, room, reason)
+        yield Tried(*where, worst, pivot, slack, over, room, reason)
 
 
 @moderate
@@ -122,14 +138,16 @@ def _every_candidate(arm, stock, radii, heights, counts, pulley, limit):
     counts=counts,
     pulley=pulleys,
     share=st.sampled_from([math.inf, 0.3, 0.05]),
+    directions=directions,
 )
-def test_search_equals_brute_force(arm, stock, radii, heights, counts, pulley, share):
+def test_search_equals_brute_force(arm, stock, radii, heights, counts, pulley, share, directions):
     limit = share * 9.80665 * math.hypot(*arm.moment)
     found = balance.search_stock(
         Mechanism(arm, travel=TRAVEL), stock, attach_radii=radii, anchor_heights=heights, counts=counts, over=Q,
+        anchor_angles=directions[0], attach_skews=directions[1],
         pulley=pulley, residual_limit=None if math.isinf(limit) else limit, refine=0, keep=100,
     )  # fmt: skip
-    tried = list(_every_candidate(arm, stock, radii, heights, counts, pulley, limit))
+    tried = list(_every_candidate(arm, stock, radii, heights, counts, pulley, limit, *directions))
     assert found.considered == len(tried)
     assert found.rejected == Counter(one.reason for one in tried if one.reason)
 
@@ -154,9 +172,10 @@ def test_search_equals_brute_force(arm, stock, radii, heights, counts, pulley, s
 def _same_front(found, fits, best):
     by_mount = {}
     for one in sorted(fits, key=lambda one: (one.worst, one.part)):
-        by_mount.setdefault((one.radius, one.height, one.count), one)
+        by_mount.setdefault((one.radius, one.height, one.angle, one.skew, one.count), one)
     pool = {
-        (o.part, o.count, o.radius, o.height): (o.worst, o.count, o.pivot) for o in [*best.values(), *by_mount.values()]
+        (o.part, o.count, o.radius, o.height, o.angle, o.skew): (o.worst, o.count, o.pivot)
+        for o in [*best.values(), *by_mount.values()]
     }
     front = [
         mine
@@ -260,3 +279,61 @@ def test_scaled_arms_and_stocks_have_scaled_answers(arm, stock, radii, heights, 
         assert b.pivot_load == pytest.approx(a.pivot_load * strong, rel=1e-9)
         assert b.slack_margin == pytest.approx(a.slack_margin * long, rel=1e-9)
         assert b.stored_energy == pytest.approx(a.stored_energy * long * strong, rel=1e-9)
+
+
+@settings(max_examples=15)
+@given(
+    seed=st.integers(0, 2**32 - 1),
+    parts=st.integers(1, 400),
+    share=st.sampled_from([math.inf, 0.5, 0.1]),
+    margin=st.sampled_from([0.0, 0.01]),
+    keep=st.integers(1, 6),
+    chunk=st.sampled_from([1, 500, 5000, 10**7]),
+)
+def test_a_long_list_against_the_formula_written_out(seed, parts, share, margin, keep, chunk):
+    """Law of cosines, all springs at all mounts at once; counts, ranks and rejections must agree."""
+    random = np.random.default_rng(seed)
+    rate, free = random.uniform(100, 4000, parts), random.uniform(0.02, 0.3, parts)
+    longest, tension = free * random.uniform(1.3, 4, parts), rate * free * random.uniform(0, 0.9, parts)
+    stock = Stock(parts=map(str, range(parts)), rate=rate, free_length=free, initial_tension=tension, longest=longest)
+    radii, heights, skews = np.linspace(0.04, 0.2, 5), np.linspace(0.06, 0.3, 4), np.array([-0.2, 0.1])
+    weight = 2.0 * 9.80665 * 0.35
+    limit = share * weight
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(mounts, "CANDIDATES", chunk)
+        found = balance.search_stock(
+            Arm(Body(2.0, (0.35, 0.0))), stock, attach_radii=radii, anchor_heights=heights, attach_skews=skews, over=Q,
+            residual_limit=None if math.isinf(limit) else limit, least_margin=margin, keep=keep, refine=0,
+        )  # fmt: skip
+
+    # axes: count, part, skew, height, radius, pose
+    count, k = np.array([1, 2]).reshape(2, 1, 1, 1, 1, 1), rate[:, None, None, None, None]
+    skew, h, r = skews[:, None, None, None], heights[:, None, None], radii[:, None]
+    between = 0.5 * math.pi - Q - skew
+    length = np.sqrt(r**2 + h**2 - 2 * r * h * np.cos(between))
+    pull = count * (tension[:, None, None, None, None] + k * (length - free[:, None, None, None, None]))
+    worst = np.abs(weight * np.cos(Q) - pull * r * h * np.sin(between) / length).max(-1)
+    slack = np.broadcast_to(length.min(-1) - margin - free[:, None, None, None] <= 0, worst.shape)
+    over = np.broadcast_to(length.max(-1) + margin - longest[:, None, None, None] > 0, worst.shape) & ~slack
+    above = ~slack & ~over & (worst > limit)
+    expected = {SLACK: int(slack.sum()), OVER: int(over.sum()), LIMIT: int(above.sum())}
+    assert found.rejected == {reason: number for reason, number in expected.items() if number}
+    left = np.where(slack | over | above, np.inf, worst).min(axis=(2, 3, 4)).ravel()
+    ranked = np.sort(left)[:keep]
+    assert [c.residual.worst for c in found.candidates] == pytest.approx(ranked[np.isfinite(ranked)].tolist(), rel=1e-9)
+    assert found.considered == worst.size
+
+
+@given(
+    shortest=st.lists(st.integers(0, 30), min_size=1, max_size=200),
+    data=st.data(),
+)
+def test_windows_hold_just_the_springs_that_fit(shortest, data):
+    longest = data.draw(st.lists(st.integers(0, 40), min_size=len(shortest), max_size=len(shortest)))
+    least, greatest = data.draw(st.integers(-1, 41)), data.draw(st.integers(-1, 41))
+    found = windows(np.array(shortest, float), np.array(longest, float))
+    short = int(found.short_enough(np.array([float(least)]))[0])
+    fits = [i for i, (a, b) in enumerate(zip(shortest, longest, strict=True)) if a < least and b >= greatest]
+    assert short == sum(a < least for a in shortest)
+    assert found.fitting(short, float(greatest)).tolist() == fits
+    assert found.any_fits(np.array([short]), np.array([float(greatest)])).tolist() == [bool(fits)]

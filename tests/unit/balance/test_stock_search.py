@@ -32,6 +32,11 @@ PULLEY = PulleyRoute(radius="10 mm", spring_end=("-20 mm", "-400 mm"))
         ({"attach_radii": [0.05, -0.08]}, "attach_radii must be > 0 m, got -0.08"),
         ({"anchor_heights": 0.0}, "anchor_heights must be > 0 m, got 0.0"),
         ({"anchor_heights": [0.1, float("nan")]}, "anchor_heights must be .* finite"),
+        ({"anchor_angles": []}, "anchor_angles must be"),
+        ({"anchor_angles": 8.0}, r"anchor_angles must be between -6.283 and 6.283 rad, got 8.0; degrees\?"),
+        ({"anchor_angles": 90.0}, r"anchor_angles must be .* got 90; degrees\?"),
+        ({"attach_skews": [0.1, 10.0]}, r"attach_skews must be between -3.142 and 3.142 rad, got 10.0; degrees\?"),
+        ({"attach_skews": "5 mm"}, r"attach_skews must be"),
         ({"counts": ()}, "counts must be at least one whole number >= 1, got none"),
         ({"counts": (1, 0)}, "counts must be whole numbers >= 1, got 0"),
         ({"counts": (1.5,)}, "counts must be whole numbers >= 1, got 1.5"),
@@ -207,6 +212,23 @@ def test_an_anchor_aside_turns_the_attachment_with_it():
     tilted = balance.search_stock(ARM, STOCK, **GRID, anchor_angles="120 deg", refine=0)
     assert tilted.best.attach_angle == pytest.approx(np.radians(30))
     assert tilted.best.anchor_angle == pytest.approx(np.radians(120))
+
+
+def test_directions_are_refined_with_the_rest_and_shown_where_they_differ():
+    grid = {**GRID, "anchor_angles": np.radians([80, 90, 100]), "attach_skews": ["-3 deg", "0 deg", "3 deg"]}
+    arm = Mechanism(ARM.linkage, travel=("-60 deg", "20 deg"))
+    coarse, fine = (balance.search_stock(arm, STOCK, **grid, refine=n) for n in (0, 3))
+    upright = balance.search_stock(arm, STOCK, **GRID, refine=0)
+    assert coarse.considered == 9 * upright.considered
+    assert fine.best.residual.worst < coarse.best.residual.worst < upright.best.residual.worst
+    assert fine.best.refined
+    for one in fine.candidates:
+        assert np.radians(80) - 1e-12 <= one.anchor_angle <= np.radians(100) + 1e-12
+        skew = one.attach_angle - (one.anchor_angle - np.radians(90))
+        assert abs(skew) <= np.radians(3) + 1e-12
+    assert re.search(r"attach mm +attach deg +anchor mm +anchor deg", str(fine))
+    assert "deg" not in str(upright).split("rejected")[0]
+    assert "anchor deg" not in str(upright)
 
 
 def test_springs_that_are_there_count():

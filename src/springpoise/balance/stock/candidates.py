@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Mapping
+import math
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from typing import TypeVar
 
 import attrs
@@ -149,30 +150,32 @@ class StockSearch:
         return "\n".join(lines)
 
 
-def _table(candidates: Iterable[StockCandidate]) -> str:
+def _table(candidates: Sequence[StockCandidate]) -> str:
+    turned = len({(c.attach_angle, c.anchor_angle) for c in candidates}) > 1
     header = (
-        "part", "count", "attach mm", "anchor mm", "worst N*m", "worst %", "rms %",
+        "part", "count", "attach mm", "attach deg", "anchor mm", "anchor deg", "worst N*m", "worst %", "rms %",
         "slack margin mm", "stretch margin mm", "pivot N", "energy J",
     )  # fmt: skip
-    return grid(
-        header,
-        [
-            (
-                c.part,
-                str(c.count),
-                f"{1e3 * c.attach_radius:.1f}",
-                f"{1e3 * c.anchor_height:.1f}",
-                f"{c.residual.worst:.4g}",
-                f"{100 * c.residual.worst_fraction:.2f}",
-                f"{100 * c.residual.rms_fraction:.2f}",
-                f"{1e3 * c.slack_margin:.1f}",
-                f"{1e3 * c.stretch_margin:.1f}",
-                f"{c.pivot_load:.0f}",
-                f"{c.stored_energy:.1f}",
-            )
-            for c in candidates
-        ],
-    )
+    rows = [
+        (
+            c.part,
+            str(c.count),
+            f"{1e3 * c.attach_radius:.1f}",
+            f"{math.degrees(c.attach_angle):.1f}",
+            f"{1e3 * c.anchor_height:.1f}",
+            f"{math.degrees(c.anchor_angle):.1f}",
+            f"{c.residual.worst:.4g}",
+            f"{100 * c.residual.worst_fraction:.2f}",
+            f"{100 * c.residual.rms_fraction:.2f}",
+            f"{1e3 * c.slack_margin:.1f}",
+            f"{1e3 * c.stretch_margin:.1f}",
+            f"{c.pivot_load:.0f}",
+            f"{c.stored_energy:.1f}",
+        )
+        for c in candidates
+    ]
+    shown = [i for i, name in enumerate(header) if turned or not name.endswith(" deg")]
+    return grid([header[i] for i in shown], [[row[i] for i in shown] for row in rows])
 
 
 def candidate(routing: Routing, stock: Stock, index: int, count: int, radius: float, height: float) -> StockCandidate:

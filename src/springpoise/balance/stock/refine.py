@@ -15,8 +15,14 @@ from springpoise.balance.stock.route import Routing
 
 __all__ = ["Box", "refined"]
 
-EVALUATIONS = 200
+ITERATIONS = 200
 """At the most so many iterations for each direction of the search."""
+
+RESTARTS, WORTHWHILE = 4, 0.01
+"""At the most so many searches, each from where the last one ended, while one gains so much relatively."""
+
+ANCHOR_ANGLE = 2
+"""Its place in a box."""
 
 
 class Box(NamedTuple):
@@ -62,7 +68,9 @@ def refined(
         return float(np.max(np.abs(base + start.count * spring.load(length) * geometry.lever[0])))
 
     begin = np.array([start.attach_radius, start.anchor_height, routing.anchor_angle, routing.attach_skew])
-    wide = [axis for axis, (low, high) in enumerate(box) if high > low]
+    # Turning a straight spring's two ends together changes nothing but where the pivot is loaded.
+    free = [axis for axis in range(len(box)) if routing.pulley is not None or axis != ANCHOR_ANGLE]
+    wide = [axis for axis in free if box[axis][1] > box[axis][0]]
     if not wide:
         return start
 
@@ -71,27 +79,25 @@ def refined(
         every[wide] = place
         return [float(value) for value in every]
 
-    # A corner of the first simplex away from the box's edge in each direction.
-    simplex = [begin[wide]]
-    for place, axis in enumerate(wide):
-        low, high = box[axis]
-        size = 0.02 * (high - low)
-        corner = begin[wide].copy()
-        corner[place] += size if corner[place] + size <= high else -size
-        simplex.append(corner)
-    found = scipy.optimize.minimize(
-        worst,
-        begin[wide],
-        method="Nelder-Mead",
-        bounds=[box[axis] for axis in wide],
-        options={
-            "initial_simplex": np.array(simplex),
-            "xatol": step / 10,
-            "fatol": 1e-9,
-            "maxiter": EVALUATIONS * len(wide),
-        },
-    )
-    radius, height, anchor_angle, attach_skew = whole(found.x)
+    bounds = np.array([box[axis] for axis in wide])
+    place, reached = begin[wide], start.residual.worst
+    for _ in range(RESTARTS):  # a simplex can fall flat against the edge of the box
+        found = scipy.optimize.minimize(
+            worst,
+            place,
+            method="Nelder-Mead",
+            bounds=bounds,
+            options={
+                "initial_simplex": _simplex(place, bounds),
+                "xatol": step / 10,
+                "fatol": 1e-9,
+                "maxiter": ITERATIONS * len(wide),
+            },
+        )
+        place, before, reached = found.x, reached, float(found.fun)
+        if not reached < (1.0 - WORTHWHILE) * before:
+            break
+    radius, height, anchor_angle, attach_skew = whole(place)
     there = turned(anchor_angle, attach_skew)
     best = start
     for drilled in _roundings((radius, height), (box.radius, box.height), step):
@@ -99,6 +105,15 @@ def refined(
         if keeps_margin(one, margin) and _has_room(there, one) and one.residual.worst < best.residual.worst:
             best = attrs.evolve(one, refined=True)
     return best
+
+
+def _simplex(place: NDArray[np.float64], bounds: NDArray[np.float64]) -> NDArray[np.float64]:
+    """A corner away from the place, and from the box's edge, in each direction."""
+    simplex = np.tile(place, (place.size + 1, 1))
+    for axis, (low, high) in enumerate(bounds):
+        size = 0.02 * (high - low)
+        simplex[axis + 1, axis] += size if place[axis] + size <= high else -size
+    return simplex
 
 
 def _roundings(
