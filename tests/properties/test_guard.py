@@ -33,7 +33,7 @@ from springpoise import (
     ZeroLengthSpring,
     guard,
 )
-from springpoise.balance import PulleyRoute
+from springpoise.balance import MethodAssumptions, PulleyRoute
 from springpoise.errors import PoiseFileError
 from springpoise.guard.files import read_text, text_of
 from springpoise.guard.place import Place
@@ -144,8 +144,68 @@ steps = st.builds(
 )
 
 
+widths = st.one_of(
+    st.builds("{!r} %".format, st.floats(1e-3, 99.0)),
+    st.builds("{!r} {}".format, st.floats(1e-6, 1e3), st.sampled_from(["mm", "cm", "m"])),
+)
+fields = ["linkage.bodies[0].com[0]", "linkage.bodies[0].com[1]", "linkage.length"]
+own_kinds = st.one_of(
+    st.builds(lambda width: {"normal": width}, widths),
+    st.builds(lambda width: {"uniform": width}, widths),
+    st.builds(
+        lambda values, in_order: {"samples": [f"{value!r} m" for value in values], "in_order": in_order},
+        st.lists(lengths, min_size=3, max_size=3),
+        st.booleans(),
+    ),
+)
+
+
+@st.composite
+def tolerances(draw: Callable[[st.SearchStrategy[Any]], Any], payload: st.SearchStrategy[str | None]) -> Any:
+    """Spreads of numbers that every arm of these has; percentages only of what cannot be 0."""
+    named = draw(st.lists(st.sampled_from(fields), min_size=1, max_size=3, unique=True))
+    shared = draw(maybe(names)) if len(named) > 1 else None
+    spreads = []
+    for field in named:
+        kind = draw(own_kinds)
+        if any(isinstance(width, str) and width.endswith("%") for width in kind.values()) and "com" in field:
+            kind = {"normal": "1 mm"}
+        spreads.append(guard.FieldSpread(field=field, name=draw(maybe(names)), shared=shared, **kind))
+    ordered = any(spread.in_order for spread in spreads)
+    reach = maybe(st.builds("{!r} mm".format, positive))
+    adjuster = st.builds(guard.Adjustable, field=st.just("linkage.bodies[0].com[0]"), name=maybe(names), reach=reach)
+    return guard.Tolerances(
+        residual_limit=draw(torques),
+        spreads=spreads,
+        payload=draw(payload),
+        builds=3 if ordered else draw(st.integers(1, 200_000)),
+        seed=draw(st.integers(0, 2**63 - 1)),
+        poses=draw(st.integers(2, 2000)),
+        adjusters=draw(maybe(st.lists(adjuster, max_size=1))),
+        adjusted_builds=draw(st.integers(1, 20_000)),
+        coverage=draw(st.floats(1e-3, 1.0)),
+    )
+
+
+comparisons = st.builds(
+    guard.MethodsRequest,
+    attach_radius=st.just(("40 mm", "0.1 m")),
+    anchor_height=st.builds(lambda low, more: (low, low + more), positive, st.floats(0.0, 1.0)),
+    attach_skew=maybe(st.tuples(angles, angles).map(sorted)),
+    methods=maybe(st.lists(st.sampled_from(["pulley", "gas", "rubber pulley", "spool"]), min_size=1)),
+    norm=st.sampled_from(["minimax", "rms"]),
+    warming=st.floats(-50.0, 50.0),
+    payload_change=st.floats(-0.9, 9.0),
+    assumptions=maybe(
+        st.builds(
+            MethodAssumptions, pulley_radius=positive, rubber_stretch=st.just((1.1, 2.5)), wall_ratio=st.just(0.5)
+        )
+    ),
+)
+
+
 def requests(payload: st.SearchStrategy[str | None]) -> st.SearchStrategy[guard.DesignRequest]:
-    shared: dict[str, Any] = {"payload": payload, "poses": st.integers(2, 10_000)}
+    shared: dict[str, Any] = {"payload": payload, "poses": st.integers(2, 10_000), "compare": maybe(comparisons)}
     return st.one_of(
         st.builds(
             guard.StockRequest,
@@ -170,14 +230,22 @@ def requests(payload: st.SearchStrategy[str | None]) -> st.SearchStrategy[guard.
 def documents(draw: Callable[[st.SearchStrategy[Any]], Any]) -> guard.PoiseFile:
     loads = draw(payloads)
     payload = st.sampled_from([None, *(load.name for load in loads)])
+    mechanism = draw(mechanisms)
+    stated = draw(maybe(tolerances(payload)))
+    stated = None if any(body.name in {"0", "1", "2"} for body in mechanism.linkage.bodies) else stated
+    design = draw(maybe(requests(payload)))
+    if design is not None and mechanism.springs:
+        design = attrs.evolve(design, compare=None)
+    yields = [guard.BuildYield(at_least=draw(st.floats(1e-3, 1.0)))] if stated is not None else []
     return guard.PoiseFile(
-        mechanism=draw(mechanisms),
+        mechanism=mechanism,
         title=draw(st.text(max_size=30)),
         description=draw(st.text(max_size=60)),
         actuator=draw(actuators),
         payloads=loads,
-        limits=draw(st.lists(limits(payload), max_size=3)),
-        design=draw(maybe(requests(payload))),
+        limits=[*draw(st.lists(limits(payload), max_size=3)), *yields],
+        tolerances=stated,
+        design=design,
     )
 
 

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from springpoise import tolerance
-from springpoise.errors import InputError
+from springpoise.errors import InputError, SpringpoiseError
 from springpoise.guard.amounts import OfPeak
 from springpoise.guard.joints import poses_over
 from springpoise.guard.limits import UNLOADED
@@ -131,8 +131,20 @@ class Builds:
             A field that cannot vary where it is, or a spread that leads to what cannot be built.
         """
         if self._scatter is None:
-            self._scatter = self._scattered(self.spreads)
+            try:
+                self._scatter = self._scattered(self.spreads)
+            except SpringpoiseError as error:
+                raise InputError(f"tolerances: {self._explained(error)}") from error
         return self._scatter
+
+    def _explained(self, error: SpringpoiseError) -> str:
+        """What went wrong, with the field that cannot vary where there is one."""
+        for one in self.tolerances.spreads:
+            try:
+                tolerance.sensitivities(self.mechanism, over=self.poses[:2], names=[self.full(one.field)])
+            except SpringpoiseError:
+                return f"spreads must be of numbers that can vary where they are, got {one.field!r}"
+        return str(error)
 
     @property
     def share(self) -> float:

@@ -161,6 +161,8 @@ class PoiseFile:
             _kind(self.actuator, Actuator, "actuator")
         if self.design is not None:
             _kind(self.design, DesignRequest, "design")
+        if self.tolerances is not None:
+            _kind(self.tolerances, Tolerances, "tolerances")
         _all_of(self.service, Service, "service")
         _all_of(self.payloads, Payload, "payloads")
         _all_of(self.limits, Limit, "limits")
@@ -213,7 +215,6 @@ class PoiseFile:
         """Whether tolerances and the limits that need them fit the mechanism."""
         stated = self.tolerances
         if stated is not None:
-            _kind(stated, Tolerances, "tolerances")
             check_tolerances(stated, self.with_payload(stated.payload), self.design, self.all_mounts)
         for i, limit in enumerate(self.limits):
             if not isinstance(limit, BuildYield):

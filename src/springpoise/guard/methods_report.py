@@ -13,8 +13,8 @@ from springpoise.tables import grid, number
 __all__ = ["methods_dict", "methods_text"]
 
 WIDTH = 100
-HEADER = ("method", "worst", "rms", "exact", "friction", "up", "down", "hold", "pivot", "energy", "inertia")
-UNITS = ("", "%", "%", "angles", "N*m", "N*m", "N*m", "N*m", "N", "J", "kg*m2")
+HEADER = ("method", "worst", "exact", "friction", "up", "down", "hold", "pivot", "energy", "inertia")
+UNITS = ("", "%", "angles", "N*m", "N*m", "N*m", "N*m", "N", "J", "kg*m2")
 
 
 def methods_text(found: MethodComparison, standing: str, load: str) -> str:
@@ -27,13 +27,16 @@ def methods_text(found: MethodComparison, standing: str, load: str) -> str:
     load
         What is on the arm, in words.
     """
-    header = (*HEADER, f"{found.warming:+.3g} K", f"{100 * found.payload_change:+.3g} %")
-    rows = [(*UNITS, "%", "%"), *(_cells(row, found.peak_gravity_torque) for row in found.rows)]
+    header = [*HEADER, f"{found.warming:+.3g} K", f"{100 * found.payload_change:+.3g} %"]
+    rows = [[*UNITS, "%", "%"], *(_cells(row, found) for row in found.rows)]
+    if found.norm == "rms":  # that is what was made least; there is room for it or for friction
+        header[3] = "rms"
+        rows[0][3] = "%"
     peak = number(found.peak_gravity_torque, "N*m")
     lines = [f"Ways to balance this arm {load}; percent of the peak gravity torque, {peak}", grid(header, rows)]
     lines.append(
-        "  exact: angles of exact balance; up, down: torque to raise, to lower it slowly; hold: torque to hold\n"
-        "  it at rest, friction helping; <: at most that; last columns: change of worst if warmer, heavier"
+        "  exact: angles of exact balance; up, down: torque to raise, to lower it slowly; hold: torque to\n"
+        "  hold it at rest, friction helping; <: at most that; +: change of worst if warmer, heavier"
     )
     if standing:
         lines.append(_wrapped(standing))
@@ -49,16 +52,15 @@ def _wrapped(text: str) -> str:
     return textwrap.fill(text, WIDTH, initial_indent="  ", subsequent_indent="    ", break_long_words=False)
 
 
-def _cells(row: MethodRow, peak: float) -> tuple[str, ...]:
-    one = row.figures
+def _cells(row: MethodRow, found: MethodComparison) -> list[str]:
+    one, peak = row.figures, found.peak_gravity_torque
     if one is None:
-        return (row.name, *("-" for _ in range(len(HEADER) + 1)))
-    return (
+        return [row.name, *("-" for _ in range(len(HEADER) + 1))]
+    return [
         row.name,
         f"{100 * one.residual.worst_fraction:.2f}",
-        f"{100 * one.residual.rms_fraction:.2f}",
         "~all" if one.balances == "near all" else one.balances,
-        _torque(one.friction, peak),
+        f"{100 * one.residual.rms_fraction:.2f}" if found.norm == "rms" else _torque(one.friction, peak),
         _torque(one.effort_up, peak),
         _torque(one.effort_down, peak),
         _torque(one.must_hold, peak),
@@ -67,7 +69,7 @@ def _cells(row: MethodRow, peak: float) -> tuple[str, ...]:
         f"{one.inertia:.2g}" if one.inertia else "0",
         f"{100 * one.warmer:+.1f}",
         f"{100 * one.heavier:+.1f}",
-    )
+    ]
 
 
 def _torque(value: float, peak: float) -> str:

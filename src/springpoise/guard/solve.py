@@ -270,7 +270,7 @@ def _finished(
         try:
             study = study_of(builds)
         except SpringpoiseError as error:
-            raise PoiseFileError(f"{given.called}: tolerances: {error}") from error
+            raise PoiseFileError(f"{given.called}: tolerances: {str(error).removeprefix('tolerances: ')}") from error
     return Design(
         document=given,
         solved=solved,
