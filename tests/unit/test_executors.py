@@ -9,6 +9,7 @@ import subprocess
 import sys
 import time
 from concurrent.futures import Executor, Future, ProcessPoolExecutor, ThreadPoolExecutor
+from concurrent.futures.process import BrokenProcessPool
 from pathlib import Path
 
 import numpy as np
@@ -84,7 +85,42 @@ def _same_search(executor):
             assert repr(one) == repr(other)  # floats to the last bit
 
 
-STUDIES = pytest.mark.parametrize("same", [_same_scatter, _same_search])
+def _pulled_straight(height, radius):
+    spring = ExtensionSpring(1000, free_length=0.05, longest=0.2)
+    path = Straight(Point("ground", (0, height)), Point("arm", (radius, 0)))
+    return Mechanism(Arm(Body(2, (0.35, 0))), springs=SpringMount(spring, path), travel=(-1, 1))
+
+
+def _place(executor, **options):
+    bounds = {"height": (0.05, 0.2), "radius": (0.05, 0.12)}
+    return balance.place(_pulled_straight, knobs=bounds, fit="rate", executor=executor, **{"starts": 3, **options})
+
+
+def _same_place(executor):
+    alone, shared = _place(None), _place(executor)
+    assert repr(alone) == repr(shared)
+
+
+def _die_once(flag, work, *arguments):
+    """Ends the worker's process in the middle of its first task."""
+    try:
+        os.close(os.open(flag, os.O_CREAT | os.O_EXCL))
+    except FileExistsError:
+        return work(*arguments)
+    os._exit(1)
+
+
+class Mortal(Executor):
+    """Another executor, one of whose workers dies."""
+
+    def __init__(self, inner, flag):
+        self.inner, self.flag = inner, flag
+
+    def submit(self, fn, /, *args, **kwargs):
+        return self.inner.submit(_die_once, self.flag, fn, *args)
+
+
+STUDIES = pytest.mark.parametrize("same", [_same_scatter, _same_search, _same_place])
 
 
 @pytest.fixture(autouse=True)
@@ -147,6 +183,14 @@ def test_what_a_search_sends_is_small_and_holds_no_names_or_prices():
     assert b"shelf" not in here.sent[0]
 
 
+@pytest.mark.parametrize("study", [_same_scatter, _same_search, _same_place])
+def test_a_worker_that_dies_breaks_a_process_pool_and_the_study_says_so(tmp_path, study):
+    with ProcessPoolExecutor(2) as pool, pytest.raises(BrokenProcessPool):
+        study(Mortal(pool, str(tmp_path / "died")))
+    with ProcessPoolExecutor(2) as pool:  # another try is no other study
+        study(Mortal(pool, str(tmp_path / "died")))
+
+
 @pytest.mark.parametrize("executor", [2, "processes", ProcessPoolExecutor])
 def test_no_executor(executor):
     message = r"executor must be an executor of concurrent\.futures or None, got"
@@ -154,6 +198,8 @@ def test_no_executor(executor):
         scatter(_arm(), SPREADS, builds=10, executor=executor)
     with pytest.raises(InputTypeError, match=message):
         _search(executor)
+    with pytest.raises(InputTypeError, match=message):
+        _place(executor)
 
 
 class Failing(Executor):
@@ -172,8 +218,8 @@ class Failing(Executor):
 
 @pytest.mark.parametrize(
     "study",
-    [lambda e: scatter(_arm(), SPREADS, builds=BUILDS, over=[0.1], executor=e), _search],
-    ids=["scatter", "search"],
+    [lambda e: scatter(_arm(), SPREADS, builds=BUILDS, over=[0.1], executor=e), _search, _place],
+    ids=["scatter", "search", "place"],
 )
 def test_the_first_error_of_a_worker_comes_through_and_the_rest_is_not_begun(study):
     failing = Failing()
@@ -201,7 +247,7 @@ LONG_RUN = """
 import sys
 from concurrent.futures import ProcessPoolExecutor
 sys.path.insert(0, {folder!r})
-from test_executors import SPREADS, _arm, _search
+from test_executors import SPREADS, _arm, _place, _search
 from springpoise.tolerance import scatter
 
 if __name__ == "__main__":
@@ -213,12 +259,13 @@ if __name__ == "__main__":
 LONG_STUDIES = [
     "scatter(_arm(), SPREADS, builds=200_000_000, executor=processes)",
     "_search(processes, parts=3000, steps=500)",
+    "_place(processes, starts=3000)",
 ]
 
 
 @pytest.mark.skipif(not hasattr(os, "killpg"), reason="process groups and SIGINT are POSIX")
 @pytest.mark.parametrize("to_all", [False, True], ids=["to the program", "to all, as a terminal does"])
-@pytest.mark.parametrize("study", LONG_STUDIES, ids=["scatter", "search"])
+@pytest.mark.parametrize("study", LONG_STUDIES, ids=["scatter", "search", "place"])
 def test_an_interrupt_leaves_no_process_behind(tmp_path, to_all, study):
     script = tmp_path / "long_run.py"
     script.write_text(LONG_RUN.format(folder=str(Path(__file__).parent), study=study))
@@ -258,26 +305,8 @@ def _cluster(processes):
 def worker_processes():
     distributed, cluster = _cluster(True)
     with cluster, distributed.Client(cluster) as client:
+        client.run(sys.path.insert, 0, str(Path(__file__).parent))
         yield client
-
-
-def _die_once(flag, work, *arguments):
-    """Ends the worker's process in the middle of its first task."""
-    try:
-        os.close(os.open(flag, os.O_CREAT | os.O_EXCL))
-    except FileExistsError:
-        return work(*arguments)
-    os._exit(1)
-
-
-class Mortal(Executor):
-    """Another executor, one of whose workers dies."""
-
-    def __init__(self, inner, flag):
-        self.inner, self.flag = inner, flag
-
-    def submit(self, fn, /, *args, **kwargs):
-        return self.inner.submit(_die_once, self.flag, fn, *args)
 
 
 @STUDIES
@@ -297,7 +326,6 @@ def test_a_cluster_of_processes_gives_the_same_bits(worker_processes, same):
 @STUDIES
 @pytest.mark.filterwarnings("ignore")
 def test_a_worker_that_dies_is_replaced_and_nothing_counts_twice(worker_processes, tmp_path, same):
-    worker_processes.run(sys.path.insert, 0, str(Path(__file__).parent))
     flag = str(tmp_path / "died")
     same(Mortal(worker_processes.get_executor(), flag))
     assert os.path.exists(flag)
