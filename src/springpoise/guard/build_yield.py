@@ -52,12 +52,12 @@ class BuildYield(Limit):
         builds = case.builds
         if builds is None:
             raise InputError("yield must have tolerances that say how the parts scatter, got none")
-        count, share, about, subject = builds.tolerances.builds, builds.share, "", self.what
+        count, share, about, subject = builds.tolerances.builds, builds.yield_share, "", self.what
         if self.adjuster is not None:
             chosen = builds.tolerances.adjuster(self.adjuster)
             if chosen is None:
                 raise InputError(f"adjuster must be one of the tolerances' adjusters, got {self.adjuster!r}")
-            count, share, about = builds.adjusted_count, builds.adjusted(chosen).share, chosen.label
+            count, share, about = builds.adjusted_count, builds.adjusted(chosen).yield_share, chosen.label
             subject = f"{self.what} with {about} adjusted"
         limits = ", ".join(number(limit, "N*m") for limit in builds.limits)
         also = f" of {count} builds within {limits}"

@@ -34,14 +34,14 @@ class AdjustedBuilds:
     """Its unit."""
     drawn: float
     """Its value as drawn [its unit]."""
-    travel: tuple[float, float]
+    range: tuple[float, float]
     """How far it moves from where it was built [its unit]: its reach, or what the stated coverage of builds needs."""
     farthest: float
     """Move of greatest magnitude that any build needs [its unit]."""
     residual: float
     """Worst residual that the stated coverage of the builds stays within, moved as far as is needed [N·m]."""
-    share: float
-    """Part of the builds that are good enough with it [1]; one that needs more than ``travel`` stays as it was built."""
+    yield_share: float
+    """Part of the builds that are good enough with it [1]; one that needs more than ``range`` stays as it was built."""
     obstacle: str | None
     """Why it cannot be set as needed; None where it can."""
 
@@ -58,7 +58,7 @@ class SpreadCost:
     """What one standard deviation of it moves the torque by, at the worst pose, to first order [N·m], >= 0."""
     at: float
     """That pose [rad]."""
-    share_without: float
+    yield_without: float
     """Part of the builds that were good enough if it did not scatter at all [1]."""
 
 
@@ -147,7 +147,7 @@ class Builds:
         return str(error)
 
     @property
-    def share(self) -> float:
+    def yield_share(self) -> float:
         """Part of the builds that are good enough as built [1]."""
         return self.scatter.yield_within()
 
@@ -184,7 +184,7 @@ class Builds:
                 found = []
         else:
             found = [self.adjusted(one) for one in named]
-        return sorted(found, key=lambda one: (one.obstacle is not None, -one.share, one.residual))
+        return sorted(found, key=lambda one: (one.obstacle is not None, -one.yield_share, one.residual))
 
     def _tried(self, fields: list[str] | None) -> tolerance.Adjusters:
         return tolerance.adjusters(
@@ -198,24 +198,24 @@ class Builds:
         )
 
     def _judged(self, row: tolerance.Adjuster, one: Adjustable) -> AdjustedBuilds:
-        travel = row.range
+        moved = row.range
         if one.reach is not None:
             reach = one.reach.inside(row.unit)
             if isinstance(reach, str):
                 reach = abs(row.value) * one.reach.value / 100.0
-            travel = -reach, reach
+            moved = -reach, reach
         limit = self.limits[0]
         as_built = self.scatter.worst[: row.remains.size] <= limit
-        within = (row.moves >= travel[0]) & (row.moves <= travel[1])
+        within = (row.moves >= moved[0]) & (row.moves <= moved[1])
         return AdjustedBuilds(
             label=one.label,
             field=row.name,
             unit=row.unit,
             drawn=row.value,
-            travel=travel,
+            range=moved,
             farthest=max(row.whole_range, key=abs),
             residual=row.residual,
-            share=float(np.mean(as_built | (within & (row.remains <= limit)))),
+            yield_share=float(np.mean(as_built | (within & (row.remains <= limit)))),
             obstacle=row.obstacle,
         )
 
@@ -239,7 +239,7 @@ class Builds:
                     spreads=tuple(members),
                     effect=float(effect[worst]),
                     at=float(self.poses[worst]),
-                    share_without=self._scattered(others).yield_within() if others else self._drawn_share(),
+                    yield_without=self._scattered(others).yield_within() if others else self._drawn_share(),
                 )
             )
         return sorted(costs, key=lambda cost: -cost.effect)

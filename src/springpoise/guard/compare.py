@@ -260,7 +260,7 @@ def _yields(document: PoiseFile) -> dict[str, tuple[float | None, str]]:
     if document.design is not None:  # its springs are still to be found
         return {}
     builds = builds_of(document)
-    return {} if builds is None else {"yield, by its own tolerances": (builds.share, "1")}
+    return {} if builds is None else {"yield, by its own tolerances": (builds.yield_share, "1")}
 
 
 def _stated_otherwise(old: Tolerances | None, new: Tolerances | None) -> tuple[TextChange, ...]:

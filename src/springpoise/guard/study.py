@@ -43,7 +43,7 @@ class ToleranceStudy:
     """How many builds were adjusted."""
 
     @property
-    def share(self) -> float:
+    def yield_share(self) -> float:
         """The yield: part of the builds that are good enough as built [1]."""
         return self.scatter.yield_within()
 
@@ -51,7 +51,9 @@ class ToleranceStudy:
     def adjuster(self) -> AdjustedBuilds | None:
         """The adjuster to provide; None where none makes more builds good enough."""
         best = self.adjusters[0] if self.adjusters else None
-        return best if best is not None and best.obstacle is None and best.share > self._share_of_adjusted else None
+        return (
+            best if best is not None and best.obstacle is None and best.yield_share > self._share_of_adjusted else None
+        )
 
     @property
     def _share_of_adjusted(self) -> float:
@@ -61,7 +63,7 @@ class ToleranceStudy:
     @property
     def status(self) -> str:
         """One sentence on what was found."""
-        return f"{percent(self.share)} of {self.scatter.builds} builds stay within {self._torque(self.limit)}"
+        return f"{percent(self.yield_share)} of {self.scatter.builds} builds stay within {self._torque(self.limit)}"
 
     @property
     def advice(self) -> str:
@@ -69,10 +71,10 @@ class ToleranceStudy:
         found = self.adjuster
         if found is None:
             return "No adjuster of these makes more builds good enough." if self.adjusters else ""
-        low, high = found.travel
+        low, high = found.range
         return (
             f"Provide: {found.label}, to be moved by {_move(low, found.unit)} to {_move(high, found.unit)} from where "
-            f"it was built. With it {percent(found.share)} of the builds stay within the limit, "
+            f"it was built. With it {percent(found.yield_share)} of the builds stay within the limit, "
             f"{percent(self._share_of_adjusted)} without."
         )
 
@@ -90,7 +92,7 @@ class ToleranceStudy:
             "builds": scatter.builds,
             "seed": scatter.seed,
             "limit_Nm": self.limit,
-            "yield": self.share,
+            "yield": self.yield_share,
             "yield_interval": [low, high],
             "worst_as_drawn_Nm": finite_or_none(float(abs(scatter.nominal).max())),
             "quantiles": [{"share": level, "worst_Nm": finite_or_none(scatter.quantile(level))} for level in LEVELS],
@@ -102,7 +104,7 @@ class ToleranceStudy:
                     "spreads": [str(one) for one in cost.spreads],
                     "effect_Nm": cost.effect,
                     "at_rad": cost.at,
-                    "yield_without": cost.share_without,
+                    "yield_without": cost.yield_without,
                 }
                 for cost in self.costs
             ],
@@ -126,7 +128,10 @@ class ToleranceStudy:
     def _facts(self) -> Iterator[tuple[str, str]]:
         scatter = self.scatter
         low, high = scatter.yield_interval()
-        yield "yield", f"{percent(self.share)}; so many builds tell it to {percent(low)} to {percent(high)} (95 % sure)"
+        yield (
+            "yield",
+            f"{percent(self.yield_share)}; so many builds tell it to {percent(low)} to {percent(high)} (95 % sure)",
+        )
         yield "worst residual as drawn", self._torque(float(abs(scatter.nominal).max()))
         for level in LEVELS:
             yield f"{100 * level:.0f} % of the builds", f"within {self._torque(scatter.quantile(level))}"
@@ -141,7 +146,7 @@ class ToleranceStudy:
             spread = cost.spreads[0].kind if cost.spreads[0].shared is None else "together"
             rows.append(
                 (_cut(cost.label), spread, number(cost.effect, "1"), share, f"{math.degrees(cost.at):.2f}",
-                 percent(cost.share_without))
+                 percent(cost.yield_without))
             )  # fmt: skip
             if cost.spreads[0].shared is not None:
                 rows += [(f"  {_cut(one.label, LABEL - 2)}", one.kind, "", "", "", "") for one in cost.spreads]
@@ -159,7 +164,7 @@ class ToleranceStudy:
         before = float(_quantile(built, self.tolerances.coverage))
         rows = [("none", "", "", "", *residual(before), percent(self._share_of_adjusted))]
         for one in self.adjusters:
-            low, high = one.travel
+            low, high = one.range
             rows.append(
                 (
                     _cut(one.label),
@@ -167,7 +172,7 @@ class ToleranceStudy:
                     f"{_move(low, one.unit)} to {_move(high, one.unit)}",
                     _move(one.farthest, one.unit),
                     *residual(one.residual),
-                    percent(one.share),
+                    percent(one.yield_share),
                 )
             )
         header = ("adjuster", "drawn", "moved by", "farthest", "worst N*m", "%", "yield")
@@ -205,11 +210,11 @@ def _adjuster_dict(one: AdjustedBuilds, *, provide: bool) -> dict[str, Any]:
         "field": one.field,
         "provide": provide,
         f"drawn{suffix}": one.drawn,
-        f"from{suffix}": one.travel[0],
-        f"to{suffix}": one.travel[1],
+        f"from{suffix}": one.range[0],
+        f"to{suffix}": one.range[1],
         f"farthest{suffix}": one.farthest,
         "worst_Nm": finite_or_none(one.residual),
-        "yield": one.share,
+        "yield": one.yield_share,
         "obstacle": one.obstacle,
     }
 

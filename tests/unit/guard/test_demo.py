@@ -102,7 +102,7 @@ def test_the_design_states_its_yield_and_the_adjuster_to_provide() -> None:
         make = tolerance.Spread.normal if one.normal else tolerance.Spread.uniform
         spreads[one.field] = make(str(width), shared=one.shared)
     direct = tolerance.scatter(mechanism, spreads, builds=4000, limit="3 %")
-    assert study.share == direct.yield_within()
+    assert study.yield_share == direct.yield_within()
     assert study.scatter.quantile(0.95) == direct.quantile(0.95)
     screws = [one.field for one in built.tolerances.adjusters or ()]
     adjusted = tolerance.adjusters(mechanism, spreads, screws, builds=1000, coverage=0.99)
@@ -110,9 +110,9 @@ def test_the_design_states_its_yield_and_the_adjuster_to_provide() -> None:
         assert row.residual == pytest.approx(adjusted[row.field].residual, rel=1e-12)
     assert study.adjuster is not None
     assert study.adjuster.label == "height of the pulley"
-    assert study.adjuster.travel == pytest.approx((-0.012, 0.012))
-    assert study.adjuster.share > 0.99
-    assert study.share < 0.7
+    assert study.adjuster.range == pytest.approx((-0.012, 0.012))
+    assert study.adjuster.yield_share > 0.99
+    assert study.yield_share < 0.7
     assert study.costs[0].label == "batch springs"
     text = str(found)
     assert "Provide: height of the pulley, to be moved by -12.0 mm to +12.0 mm" in text

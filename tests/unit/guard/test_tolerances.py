@@ -291,17 +291,17 @@ def test_a_design_reports_its_yield(written: Write) -> None:
         "springs[0].path.first.at[1]": tolerance.Spread.uniform("2 mm"),
     }
     direct = tolerance.scatter(mechanism, spreads, builds=2000, limit="5 %")
-    assert study.share == direct.yield_within()
+    assert study.yield_share == direct.yield_within()
     assert study.costs[0].label == "rate"
     assert study.costs[0].effect == pytest.approx(0.04 * 3 * 9.8 * 0.4, rel=1e-4)  # no pose at 0 deg
-    assert study.costs[0].share_without == 1.0
+    assert study.costs[0].yield_without == 1.0
     assert study.costs[1].effect == pytest.approx(0.01 / math.sqrt(3) * 3 * 9.8 * 0.4, rel=1e-4)  # no pose at 0 deg
     assert study.adjuster is not None
     text = str(found)
     assert "Provide: anchor, to be moved by -40.0 mm to +40.0 mm from where it was built." in " ".join(text.split())
     assert max(map(len, text.splitlines())) <= 100
     data = json.loads(json.dumps(found.to_dict(), allow_nan=False))["tolerances"]
-    assert data["yield"] == study.share
+    assert data["yield"] == study.yield_share
     assert data["adjusters"][0]["provide"] is True
     assert data["adjusters"][0]["from_m"] == -0.04
     assert data["costs"][0]["effect_Nm"] == study.costs[0].effect
@@ -339,7 +339,7 @@ def test_adjusters_that_suggest_themselves(written: Write) -> None:
     fields = {one.field for one in found.study.adjusters}
     assert {"springs[0].path.first.at[1]", "springs[0].path.last.at[0]", "springs[0].rigid_length"} <= fields
     assert found.study.adjuster is not None
-    low, high = found.study.adjuster.travel
+    low, high = found.study.adjuster.range
     assert low < 0 < high
 
 
@@ -362,7 +362,7 @@ def test_a_batch_costs_together(written: Write) -> None:
     (cost,) = study.costs
     assert cost.label == "batch A"
     assert cost.effect == pytest.approx((0.04 + 0.01 / math.sqrt(3)) * 3 * 9.8 * 0.4, rel=1e-4)  # no pose at 0 deg
-    assert cost.share_without == 1.0
+    assert cost.yield_without == 1.0
     assert "batch A" in str(study)
     assert "together" in str(study)
 
@@ -375,9 +375,9 @@ def test_own_samples(written: Write) -> None:
     text = text.replace('    { field = "springs[0].path.first.at[1]", uniform = "2 mm" },\n', "")
     study = guard.design(unsolved(written, text.replace('N/m"] }', 'N/m"], in_order = true }') + SINE)).study
     assert study is not None
-    assert study.share == 0.5
+    assert study.yield_share == 0.5
     assert study.adjusted_count == 2
-    assert study.adjusters[0].share == 1.0
+    assert study.adjusters[0].yield_share == 1.0
     assert study.costs[0].effect == pytest.approx(0.05 * 3 * 9.8 * 0.4, rel=1e-4)  # no pose at 0 deg
 
 
