@@ -17,6 +17,7 @@ import pytest
 
 from springpoise import Arm, Body, Cable, Disc, Link, Mechanism, PlanarChain, Point, SpringMount, ZeroLengthSpring
 from springpoise.balance.pulleys.remedies import pulley_remedies
+from springpoise.errors import InputError
 from springpoise.gravity import STANDARD_GRAVITY
 from springpoise.paths.drum import Drum
 
@@ -95,6 +96,31 @@ def test_orders():
     assert ratios[names.index("mirrored pair")] == pytest.approx(4, rel=0.1)
     # entry rollers: L - d = ρ γ³/6
     assert ratios[names.index("twin entry rollers")] == pytest.approx(2, rel=0.05)
+
+
+@pytest.mark.parametrize(("low", "high"), [(30, 150), (-150, -30), (-170, 60), (120, 240), (-60, 60)])
+@pytest.mark.parametrize("turn", ["cw", "ccw"])
+def test_the_joint_drum_is_exact_wherever_the_cable_stays_on(low, high, turn):
+    """Far pulley fixed to the arm: linear error -s rho theta, which a drum of the same radius on the joint cancels."""
+    arm = Mechanism(Arm(Body(2.0, (0.35, 0.0))), travel=(math.radians(low), math.radians(high)))
+    found = pulley_remedies(arm, pulley_radius=0.005, attach_radius=B, anchor_height=A, turn=turn)
+    assert found.named("equal far pulley and joint drum").residual.worst < 1e-11 * G
+
+
+def test_an_arm_that_goes_over_the_top_has_its_rollers_below_the_anchor():
+    """The attachment stays below the anchor, its direction within asin(b/a) of straight down: so is the entry.
+
+    L - d = rho gamma³/6 to leading order: with d about 0.1 m and gamma up to asin(0.8) the error stays near a per cent.
+    """
+    arm = Mechanism(Arm(Body(2.0, (0.35, 0.0))), travel=(math.radians(-170), math.radians(170)))
+    found = pulley_remedies(arm, pulley_radius=0.005, attach_radius=B, anchor_height=A)
+    twin = found.named("twin entry rollers")
+    assert "-90.00 deg" in twin.change
+    assert twin.residual.worst_fraction < 0.02
+    # 340 deg of the arm beside the cable's direction are more than can lie on a drum.
+    assert "equal far pulley and joint drum" not in [one.name for one in found.remedies]
+    with pytest.raises(InputError, match=r"name must be one of 'nothing', .*, got 'equal far pulley and joint drum'"):
+        found.named("equal far pulley and joint drum")
 
 
 def test_entry_direction():

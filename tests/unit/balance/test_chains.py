@@ -228,6 +228,18 @@ def test_wrong_arguments(chain, options, error, message):
         balance_chain(chain, **{"springs": SPRINGS, **options})
 
 
+def test_a_chain_that_gravity_does_not_turn_is_refused():
+    still = PlanarChain([Link("upper", Body(1.0, (0, 0))), Link("fore", Body(1.0, (0, 0)))])
+    with pytest.raises(InputError, match="chain must have something to balance, got links that gravity does not turn"):
+        balance_chain(still, "direct", springs=ChainSpring("ground", "upper", start=0.1, end=0.1))
+
+
+def test_the_least_number_has_a_proof():
+    link = PlanarChain([Link("upper", Body(1.0, (0.1, 0)))])
+    found = balance_chain(link, "direct", springs=ChainSpring("ground", "upper", start=0.1, end=0.1))
+    assert "orthogonal" in found.count_proof
+
+
 def test_a_mechanism_with_springs_is_refused():
     mech = balance_chain(CARRIED, springs=SPRINGS).mechanism
     with pytest.raises(InputError, match=r"must be a Mechanism without springs, got 2"):
@@ -259,7 +271,7 @@ def test_a_four_bar_says_that_its_least_number_is_not_known():
     four = FourBar(**links, rocker=Link("rocker", Body(1.0, (0.1, 0)), length=0.3), second_pivot=(0.4, 0))
     springs = [ChainSpring("ground", name, start=0.1, end=0.1) for name in ("crank", "rocker")]
     found = balance_chain(four, springs=springs)
-    assert found.success and found.least_count is None
+    assert found.success and found.least_count is None and found.count_proof is None
     assert found.count_statement == "2, one for each crank; whether fewer could do is not known"
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 
+import attrs
 import numpy as np
 import pytest
 
@@ -12,6 +13,7 @@ from springpoise import (
     Body,
     Cable,
     Disc,
+    ExtensionSpring,
     FourBar,
     Friction,
     JointTravel,
@@ -22,6 +24,7 @@ from springpoise import (
     Straight,
     TorsionSpring,
     ZeroLengthSpring,
+    balance,
 )
 from springpoise.balance.payloads.adjust import adjust_for_payload
 from springpoise.errors import InputError, InputTypeError, NoSolution
@@ -173,3 +176,39 @@ def test_a_linkage_other_than_an_arm():
         assert step.residual.worst < step.residual_before.worst
         assert step.exact_place is None
     assert np.isfinite(found.chosen.worst)
+
+
+def test_no_payload_is_no_move_however_gravity_lies():
+    """Rounding in a tilted, offset arm is no shift: nothing is free at some poses and not at others."""
+    arm = Arm(Body(2.0, (0.3, -0.1)), length=0.5)
+    tilted = Mechanism(arm, travel=(-1.0, 1.0), gravity=(3.0, -9.0))
+    lift = balance.sine_match(tilted, attach_radius=0.16, anchor_height=0.1).mechanism
+    found = adjust_for_payload(lift, payloads=(0, 0.8), steps=2)
+    for point in found.points:
+        assert point.steps[0].shift == 0.0
+        assert point.steps[0].free_at == ()
+    assert max(map(len, str(found).splitlines())) < 150
+
+
+def test_without_friction_a_balanced_arm_holds_what_it_is_set_for():
+    lift = balance.sine_match(
+        Mechanism(Arm(Body(2.0, (0.35, 0.0)), length=0.5), travel=(-1.0, 1.0)), attach_radius=0.16, anchor_height=0.1
+    ).mechanism
+    found = adjust_for_payload(lift, payloads=(0, 0.8), steps=2)
+    assert found.friction_payloads == pytest.approx((0.0, 0.0), abs=1e-9)
+    assert "friction alone holds  0 kg and no other" in str(found)
+
+
+def test_a_spring_that_leaves_its_working_range_is_no_success():
+    """At -60 deg the ends are sqrt(0.15² + 0.12² + 2 · 0.15 · 0.12 · sin 60 deg) = 0.26 m apart as they are."""
+    path = Straight(Point("ground", (0, 0.15)), Point("arm", (0.12, 0)))
+    spring = ExtensionSpring(900, free_length=0.05, longest=0.22)
+    lift = Mechanism(
+        Arm(Body(2.0, (0.35, 0.0)), length=0.5), springs=SpringMount(spring, path), travel=("-60 deg", "70 deg")
+    )
+    found = adjust_for_payload(lift, payloads=(0, "0.8 kg"), steps=2)
+    assert not found.success
+    with pytest.raises(NoSolution, match=r"takes its spring [0-9.]+ mm out of its working range for [0-9.]+ k?g"):
+        found.require()
+    longer = lift.with_springs(SpringMount(attrs.evolve(spring, longest=0.30), path))
+    assert adjust_for_payload(longer, payloads=(0, "0.8 kg"), steps=2).success

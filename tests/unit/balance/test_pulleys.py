@@ -93,3 +93,16 @@ def test_a_spring_that_is_there_stays():
         # the new spring has less to do, and errs by as much less
         assert two.residual.worst == pytest.approx(share * one.residual.worst, rel=1e-5, abs=1e-12)
         assert two.rate_ratio == pytest.approx(one.rate_ratio, rel=1e-5)
+
+
+def test_poses_far_apart_do_not_hide_what_lies_between_them():
+    """Between -170 and 170 deg the attachment comes to 20 mm from the anchor, at the top."""
+    lift = Mechanism(Arm(Body("2 kg", ("0.35 m", 0))))
+    with pytest.raises(InputError, match=r"pulley_radius must be less than half the least distance .* \(0.02"):
+        pulley_remedies(
+            lift,
+            pulley_radius="11 mm",
+            attach_radius="80 mm",
+            anchor_height="100 mm",
+            over=("-170 deg", "0 deg", "170 deg"),
+        )

@@ -65,7 +65,8 @@ def balance_chain(
     ------
     InputError, InputTypeError
         A joint that slides or follows others, a missing carried frame, springs that do not fit the
-        chain or the layout, too little that is fixed, a mechanism that has springs already.
+        chain or the layout, too little that is fixed, a mechanism that has springs already, one that
+        gravity does not turn.
 
     References
     ----------
@@ -106,6 +107,8 @@ def balance_chain(
     if layout not in LAYOUTS:
         raise InputError(f"layout must be 'carried', 'direct' or 'ground', got {layout!r}")
     skeleton = skeleton_of(linkage, mechanism.gravity)
+    if not np.any(_without_rounding(skeleton)[1:]):
+        raise InputError("chain must have something to balance, got links that gravity does not turn")
     wanted = _springs(springs, skeleton, layout)
     _check_layout(skeleton, layout)
     names = _names(wanted)

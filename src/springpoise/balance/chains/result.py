@@ -119,6 +119,23 @@ class ChainBalance:
         return f"{used}; {rule}, and layout 'ground' does it with as many as there are links"
 
     @property
+    def count_proof(self) -> str | None:
+        """Why ``least_count`` springs are the least, in words; None for loops.
+
+        With s_j the vector of each spring's shares along link j, weighted by the roots of the rates:
+        gravity on link j has to be met, so that s_j is not zero, and no two links may be coupled, so
+        that the s_j are orthogonal. Orthogonal vectors that are not zero are no more than they have
+        components, one for each spring.
+        """
+        if self.least_count is None:
+            return None
+        return (
+            "the shares of all springs along a link, weighted by the roots of their rates, make a vector; it is not "
+            "zero where gravity turns the link, and the vectors of two links are orthogonal where they are not coupled; "
+            "of such vectors there are no more than springs"
+        )
+
+    @property
     def status(self) -> str:
         """One sentence on what was found."""
         if self.problems:

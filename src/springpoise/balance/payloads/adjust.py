@@ -24,7 +24,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from springpoise import units
-from springpoise.balance.payloads.result import AdjustmentStep, PayloadAdjustment, PointToMove
+from springpoise.balance.payloads.result import SLIGHT, AdjustmentStep, PayloadAdjustment, PointToMove
 from springpoise.balance.payloads.slides import Slide, slides_of
 from springpoise.balance.residuals import poses_over, residual
 from springpoise.errors import InputError, InputTypeError
@@ -41,6 +41,9 @@ TIE = 1e-9
 
 IDLE = 1e-9
 """A payload whose torque is below this share of its greatest does nothing at that pose [1]."""
+
+STILL = 1e-7
+"""A shift below this share of the point's distance from its body's origin is what a search leaves: none [1]."""
 
 AT_THE_END = 1e-9
 """A shift this near to the end of its reach has run into it [m]."""
@@ -94,7 +97,7 @@ def adjust_for_payload(
     Returns
     -------
     PayloadAdjustment
-        Not a success where ``reach`` is too short.
+        Not a success where ``reach`` is too short, or the spring would leave its working range.
 
     Raises
     ------
@@ -140,7 +143,7 @@ def adjust_for_payload(
 
 
 def _missing(point: PointToMove) -> int:
-    return sum(not step.within_reach for step in point.steps)
+    return sum(not (step.within_reach and step.margin >= -SLIGHT) for step in point.steps)
 
 
 def _where(mechanism: Mechanism, at: Any) -> Point:
@@ -181,7 +184,8 @@ def _point(
 def _step(slide: Slide, mass: float, before: Mechanism, q: Array, reach: tuple[float, float] | None) -> AdjustmentStep:
     shift = slide.shift_for(before, q, reach)
     after = slide.moved(before, shift)
-    free = _free_poses(before, after) if shift else ()
+    moves = abs(shift) > STILL * (abs(slide.at) or 1.0)
+    free = _free_poses(before, after) if moves else ()
     spring_range = working_range_of(after.springs[slide.index].spring)
     lengths = np.broadcast_to(after.spring_states(q)[slide.index].length, q.shape)
     return AdjustmentStep(
@@ -258,7 +262,8 @@ def _held_by_friction(mechanism: Mechanism, empty: Mechanism, at: Point, q: Arra
     size = float(np.max(np.abs(loaded.holding_torque(q) - empty.holding_torque(q))))
     low = max(-_least(lambda poses: -window(poses)[0], q), 0.0)
     high = _least(lambda poses: window(poses)[1], q)
-    return (low, high) if low <= high else None
+    nothing = IDLE * residual(empty.with_springs(()), q).peak_gravity_torque / size  # rounding of a balanced arm [kg]
+    return (low, max(low, high)) if low <= high + nothing else None
 
 
 def _least(value: Callable[[Array], Array], q: Array) -> float:

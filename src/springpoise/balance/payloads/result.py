@@ -13,7 +13,10 @@ from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism
 from springpoise.tables import degrees, facts, grid, millimetres, number
 
-__all__ = ["AdjustmentStep", "PayloadAdjustment", "PointToMove"]
+__all__ = ["SLIGHT", "AdjustmentStep", "PayloadAdjustment", "PointToMove"]
+
+SLIGHT = 1e-9
+"""A length by which a working range is left that is rounding [m]."""
 
 
 @attrs.frozen
@@ -103,8 +106,8 @@ class PayloadAdjustment:
 
     @property
     def success(self) -> bool:
-        """Whether the chosen point gets to all its places."""
-        return all(step.within_reach for step in self.chosen.steps)
+        """Whether the chosen point gets to all its places, and its spring stays within its working range there."""
+        return all(step.within_reach and step.margin >= -SLIGHT for step in self.chosen.steps)
 
     @property
     def status(self) -> str:
@@ -114,8 +117,14 @@ class PayloadAdjustment:
         if missed:
             step = max(missed, key=lambda one: one.residual.worst)
             return (
-                f"the {chosen.name} does not reach its place for {number(step.payload, 'kg')}: at the end of its reach "
+                f"the {chosen.name} does not reach its place for {_mass(step.payload)}: at the end of its reach "
                 f"{number(step.residual.worst, 'N*m')} are left"
+            )
+        worst = min(chosen.steps, key=lambda one: one.margin)
+        if worst.margin < -SLIGHT:
+            return (
+                f"moving the {chosen.name} takes its spring {millimetres(-worst.margin)} out of its working range for "
+                f"{_mass(worst.payload)}"
             )
         return f"move the {chosen.name} over {millimetres(chosen.way)}; {_left(chosen.worst)} is left at worst"
 
@@ -125,7 +134,7 @@ class PayloadAdjustment:
         Raises
         ------
         NoSolution
-            The chosen point's reach is too short.
+            The chosen point's reach is too short, or its spring leaves its working range.
         """
         if not self.success:
             raise NoSolution(self.status)
@@ -143,9 +152,7 @@ class PayloadAdjustment:
             ),
             (
                 "friction alone holds",
-                "no payload at every pose"
-                if self.friction_payloads is None
-                else " to ".join(number(mass, "kg") if mass else "0 kg" for mass in self.friction_payloads),
+                _held(self.friction_payloads),
             ),
         ]
         header = (
@@ -161,7 +168,7 @@ class PayloadAdjustment:
         )
         table = [
             (
-                number(step.payload, "kg") if step.payload else "0 kg",
+                _mass(step.payload),
                 f"{1e3 * step.shift + 0.0:.2f}",
                 f"{1e3 * step.place[0] + 0.0:.2f}",
                 f"{1e3 * step.place[1] + 0.0:.2f}",
@@ -178,6 +185,17 @@ class PayloadAdjustment:
             for one in self.points[1:]
         ]
         return "\n".join(["payload adjustment", facts(rows), grid(header, table), *([facts(others)] if others else [])])
+
+
+def _held(payloads: tuple[float, float] | None) -> str:
+    if payloads is None:
+        return "no payload at every pose"
+    low, high = map(_mass, payloads)
+    return f"{low} to {high}" if low != high else f"{low} and no other"
+
+
+def _mass(mass: float) -> str:
+    return number(mass, "kg") if mass > 1e-9 else "0 kg"
 
 
 def _left(torque: float) -> str:

@@ -108,6 +108,8 @@ class Slide:
             now, step = self.at.conjugate() * other, self.along.conjugate() * other
         else:
             now, step = other.conjugate() * self.at, other.conjugate() * self.along
+        if abs(lacking - now) <= ROUNDING * scale:
+            return 0.0
         shift = float(((lacking - now) * step.conjugate()).real / abs(step) ** 2)
         return shift if abs(lacking - now - shift * step) <= ROUNDING * scale else None
 

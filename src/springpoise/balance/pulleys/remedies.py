@@ -44,7 +44,8 @@ class PulleyRemedies:
     first_order: float
     """Worst residual over the peak gravity torque for a metre of radius, for small radii [1/m]."""
     remedies: tuple[PulleyRemedy, ...]
-    """Nothing at all, and every remedy, in the order of what they ask for."""
+    """Nothing at all, and every remedy, in the order of what they ask for; without the joint drum where the cable
+    would turn on or off it by more than three quarters of a turn."""
 
     @property
     def status(self) -> str:
@@ -165,7 +166,7 @@ def pulley_remedies(
         q=q,
         set_at=at,
     )
-    nearest = float(np.min(np.abs(routes.reach(routes.q))))
+    nearest = float(np.min(np.abs(routes.reach(routes.swept))))
     if not 2.0 * routes.radius < nearest:
         raise InputError(
             f"pulley_radius must be less than half the least distance from anchor to attachment ({nearest:g} m), "
@@ -200,7 +201,7 @@ def _remedies(routes: Routes, turn: str) -> list[PulleyRemedy]:
         routes.refitted("shift by the radius, refit", turn, -sense * rho, "rms"),
         routes.refitted("best shift, refit", turn, routes.best_shift(turn), "rms"),
     ]
-    return [
+    found = [
         routes.made("nothing", "none", [routes.pulley(turn, rate)]),
         *refits,
         routes.made(
@@ -218,10 +219,12 @@ def _remedies(routes: Routes, turn: str) -> list[PulleyRemedy]:
             f"a pulley of {millimetres(rho)} on the arm, kept from turning with it by a parallelogram or a 1:1 belt",
             [routes.kept()],
         ),
-        routes.made(
-            "equal far pulley and joint drum",
-            f"a pulley of {millimetres(rho)} fixed to the arm, and a drum of {millimetres(rho)} on the joint "
-            "to which the cable's other end is tied",
-            [routes.drums(turn)],
-        ),
     ]
+    drums = routes.drums(turn)
+    if drums is None:
+        return found
+    change = (
+        f"a pulley of {millimetres(rho)} fixed to the arm, and a drum of {millimetres(rho)} on the joint "
+        "to which the cable's other end is tied"
+    )
+    return [*found, routes.made("equal far pulley and joint drum", change, [drums])]

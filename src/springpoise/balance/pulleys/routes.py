@@ -28,6 +28,15 @@ Array = NDArray[np.float64]
 FARTHEST_SHIFT = 2.0
 """A best shift is looked for within this many radii to either side [1]."""
 
+MOST_ON = 1.5 * math.pi
+"""Over more than this a cable that lies on a drum is taken for one that has come off its tie [rad]."""
+
+LYING_ON = 0.97 * MOST_ON
+"""By so much what lies on a drum may change [rad]."""
+
+FAR_BEYOND = 0.1
+"""Share of the cable's swing by which it may go beyond its directions at the ends of the poses [1]."""
+
 APART = 1.0 + 1e-12
 """Two rollers that touch stand so little apart that rounding does not push the one into the other [1]."""
 
@@ -70,12 +79,17 @@ class Routes:
     @property
     def anchor(self) -> complex:
         """Where the anchor is on the ground [m]."""
-        return cmath.rect(self.ideal.anchor_height, self.ideal.anchor_angle)
+        return self._ends[0]
 
     @property
     def attach(self) -> complex:
         """Where the attachment is on the arm [m]."""
-        return cmath.rect(self.ideal.attach_radius, self.ideal.attach_angle)
+        return self._ends[1]
+
+    @property
+    def _ends(self) -> tuple[complex, complex]:
+        path: Any = self.ideal.mechanism.springs[-1].path
+        return complex(*path.first.at), complex(*path.last.at)
 
     @property
     def upward(self) -> complex:
@@ -84,10 +98,21 @@ class Routes:
 
     @property
     def entry(self) -> float:
-        """Mean of the straight cable's directions at both ends of the poses [rad]."""
-        swept = np.linspace(self.q.min(), self.q.max(), 361)
-        directions = np.unwrap(np.angle(self.reach(swept)))
-        return math.remainder(0.5 * float(directions[0] + directions[-1]), 2.0 * math.pi)
+        """Middle of the straight cable's directions [rad]: of those at both ends of the poses, or of all.
+
+        Of all where the cable swings far beyond its directions at the ends, as it does for an arm that goes
+        over the top.
+        """
+        directions = np.unwrap(np.angle(self.reach(self.swept)))
+        ends, least, most = directions[[0, -1]], float(directions.min()), float(directions.max())
+        beyond = max(float(ends.min()) - least, most - float(ends.max()))
+        middle = 0.5 * (least + most) if beyond > FAR_BEYOND * (most - least) else 0.5 * float(ends.sum())
+        return math.remainder(middle, 2.0 * math.pi)
+
+    @property
+    def swept(self) -> Array:
+        """Poses close together over the range of the poses [rad]."""
+        return np.linspace(self.q.min(), self.q.max(), 361)
 
     def reach(self, q: Any, shift: float = 0.0) -> Any:
         """From the pulley's centre to the attachment [m], as complex numbers."""
@@ -120,8 +145,7 @@ class Routes:
     def _spring_end(self, turn: str, shift: float) -> complex:
         """Where the spring's end lies, so that a quarter turn is wrapped in the middle of the poses."""
         sense = 1.0 if turn == "cw" else -1.0
-        swept = np.linspace(self.q.min(), self.q.max(), 361)
-        z = self.reach(swept, shift)
+        z = self.reach(self.swept, shift)
         touch = np.unwrap(np.angle(z)) + sense * np.arccos(np.minimum(self.radius / np.abs(z), 1.0))
         if not np.ptp(touch) < 0.95 * math.pi:
             raise InputError(
@@ -157,20 +181,24 @@ class Routes:
         path = Straight(_on("ground", self.anchor), _on("arm", self.attach))
         return SpringMount(ZeroLengthSpring(self.ideal.rate), path)
 
-    def drums(self, turn: str) -> SpringMount:
-        """Equal pulleys at both ends, the far one fixed to the arm, and a drum on the joint at the other end."""
+    def drums(self, turn: str) -> SpringMount | None:
+        """Equal pulleys at both ends, the far one fixed to the arm, and a drum on the joint at the other end.
+
+        None where the cable would turn on or off one of them by more than it can lie on.
+        """
         sense = 1.0 if turn == "cw" else -1.0
-        middle = 0.5 * float(self.q.min() + self.q.max())
         guide = self._spring_end(turn, 0.0)
-        leaving = cmath.phase(guide) + sense * math.acos(self.radius / abs(guide))
-        arriving = float(np.angle(self.reach(middle))) + sense * math.pi / 2
+        # Where the cable meets the two, in the arm's frame; it lies on from there to its tie.
+        leaving = cmath.phase(guide) + sense * math.acos(self.radius / abs(guide)) - self.swept
+        arriving = np.unwrap(np.angle(self.reach(self.swept))) + sense * math.pi / 2 - self.swept
+        if max(np.ptp(leaving), np.ptp(arriving)) > LYING_ON:
+            return None
+        near, far = (0.5 * float(at.min() + at.max()) for at in (leaving, arriving))
         path = Cable(
-            Drum(_on("arm", 0.0), radius=self.radius, turn=turn, tie=_turned(leaving + sense * math.pi - middle)),
+            Drum(_on("arm", 0.0), radius=self.radius, turn=turn, tie=_turned(near + sense * 0.5 * MOST_ON)),
             _on("ground", guide),
             Disc(_on("ground", self.anchor), radius=self.radius, turn=turn),
-            Drum(
-                _on("arm", self.attach), radius=self.radius, turn=turn, tie=_turned(arriving - sense * math.pi - middle)
-            ),
+            Drum(_on("arm", self.attach), radius=self.radius, turn=turn, tie=_turned(far - sense * 0.5 * MOST_ON)),
         )
         return self._set(path, self.ideal.rate, float(abs(self.reach(self.set_at))), self.set_at)
 
