@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import os
 import re
+import shutil
 import subprocess
 import sys
 from collections.abc import Callable
@@ -266,6 +267,33 @@ def test_control_characters_of_a_file_do_not_reach_the_terminal(put: Files, caps
     out = capsys.readouterr().out
     assert "\x1b" not in out
     assert out.startswith("a?[31mb\n")
+
+
+DEMO = Path(__file__).parents[2] / "docs" / "examples"
+
+
+def test_the_demo(tmp_path: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(tmp_path)
+    for name in ("greenhouse_lift.poise.toml", "greenhouse_springs.csv"):
+        shutil.copy(DEMO / name, tmp_path / name)
+    assert main(["design", "greenhouse_lift.poise.toml"]) == 0
+    out, err = capsys.readouterr()
+    assert err == ""
+    for words in ("2 x GL-052", "Tolerances: ", "What costs most", "Provide: height of the pulley", "Ways to balance"):
+        assert out.count(words) >= 1, words
+    assert out.count("Caution: ") == 1
+    assert main(["check", "greenhouse_lift.solved.poise.toml"]) == 0
+    assert "yield, adjusted" in capsys.readouterr().out
+    solved = Path("greenhouse_lift.solved.poise.toml")
+    text = solved.read_text(encoding="utf-8")
+    assert "[design" not in text
+    assert "# How parts of this size come out" in text
+    solved.write_text(text.replace('at_least = "99 %"', 'at_least = "99.9 %"'), encoding="utf-8")
+    assert main(["check", str(solved)]) == 1
+    assert "yield with height of the pulley adjusted" in capsys.readouterr().out
+    solved.write_text(text.replace("bodies[boom].mass", "bodies[bom].mass"), encoding="utf-8")
+    assert main(["check", str(solved)]) == 2
+    assert "got 'linkage.bodies[bom].mass'; did you mean linkage.bodies[boom]?" in capsys.readouterr().err
 
 
 def test_help_and_version(capsys: pytest.CaptureFixture[str]) -> None:

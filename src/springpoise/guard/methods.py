@@ -276,6 +276,4 @@ def standing(found: MethodComparison, mounts: Sequence[SpringMount] | str, after
         return f"{subject}, which cannot be sized between these bounds. {own}"
     rank, count = found.ranking.index(method) + 1, len(found.ranking)
     place = "the only one here" if count == 1 else f"number {rank} of {count} here"
-    return (
-        f"{subject}, {place}. Sized freely between the same bounds it would leave {left(row.figures.residual)}. {own}"
-    )
+    return f"{subject}, {place}. Of usual parts between these bounds it would leave {left(row.figures.residual)}. {own}"

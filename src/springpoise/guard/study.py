@@ -130,7 +130,7 @@ class ToleranceStudy:
         low, high = scatter.yield_interval()
         yield (
             "yield",
-            f"{percent(self.yield_share)}; so many builds tell it to {percent(low)} to {percent(high)} (95 % sure)",
+            f"{percent(self.yield_share)}; of endless builds {percent(low)} to {percent(high)} (95 % sure)",
         )
         yield "worst residual as drawn", self._torque(float(abs(scatter.nominal).max()))
         for level in LEVELS:
@@ -177,7 +177,10 @@ class ToleranceStudy:
             )
         header = ("adjuster", "drawn", "moved by", "farthest", "worst N*m", "%", "yield")
         lines = [f"Adjusters, each alone and set in each of {self.adjusted_count} builds", grid(header, rows)]
-        lines.append(f"  moved by: its reach, or what {cover} of the builds need; worst: what {cover} then stay within")
+        lines.append(
+            f"  moved by: its reach, or what {cover} of the builds need; yield: so far and no farther;\n"
+            f"  worst: what {cover} of the builds stay within, moved as far as each needs"
+        )
         lines += [
             _wrapped(f"{one.label} cannot be set as needed: {one.obstacle}") for one in self.adjusters if one.obstacle
         ]

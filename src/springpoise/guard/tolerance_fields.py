@@ -7,6 +7,8 @@ import re
 from collections.abc import Sequence
 from typing import Any
 
+import attrs
+
 from springpoise import tolerance
 from springpoise.errors import InputError, SpringpoiseError, UnitError
 from springpoise.guard.requests import DesignRequest, SineRequest, StockRequest
@@ -39,7 +41,8 @@ def _part(value: Any, name: str) -> Any:
     """What stands at a name with numbers in its brackets; None where there is nothing."""
     for attribute, index in re.findall(r"([A-Za-z_]\w*)|\[(\d+)\]", name):
         if attribute:
-            value = getattr(value, attribute, None)
+            known = attrs.has(type(value)) and attribute in attrs.fields_dict(type(value))
+            value = getattr(value, attribute) if known else None
         else:
             value = value[int(index)] if isinstance(value, tuple) and int(index) < len(value) else None
     return value
@@ -133,7 +136,7 @@ def check_tolerances(
         full = full_name(whole, field)
         if full not in known:
             hint = _hint(full, whole, known, design)
-            raise InputError(f"{where}.field must be a number of the mechanism, got {field!r}{hint}")
+            raise InputError(f"{where}.field must be a number of the mechanism, got {field[:120]!r}{hint}")
         number = known[full]
         for width in widths:
             try:
@@ -171,17 +174,21 @@ def _hint(full: str, mechanism: Mechanism, known: Any, design: DesignRequest | N
         return "; a whole number does not scatter"
     if full.startswith("travel"):
         return "; the travel is where the mechanism is used, and does not scatter"
-    spring = re.match(r"springs\[([^\[\]]+)\]", full)
-    count = len(mechanism.springs)
-    if spring is not None and not (spring[1].isdecimal() and int(spring[1]) < count):
-        if isinstance(design, StockRequest | SineRequest) and not spring[1].isdecimal():
+    for bracket in BRACKET.finditer(full):
+        before = full[: bracket.start()]
+        parts = _part(mechanism, before)
+        count = len(parts) if isinstance(parts, tuple) else 0
+        if not count or (bracket[1].isdecimal() and int(bracket[1]) < count):
+            continue
+        if bracket[1].isdecimal():
+            return f"; {before} are counted from 0 here, and there {'is' if count == 1 else 'are'} {count}"
+        if before == "springs" and isinstance(design, StockRequest | SineRequest):
             return f"; the spring that the design finds is springs[{count - 1}]"
-        names = [one.name for one in mechanism.springs if one.name is not None]
-        near = difflib.get_close_matches(spring[1], names, n=1)
+        names = [name for part in parts if isinstance(name := getattr(part, "name", None), str)]
+        near = difflib.get_close_matches(bracket[1], names, n=1)
         if near:
-            return f"; did you mean springs[{near[0]}]?"
-        if spring[1].isdecimal():
-            return f"; springs are counted from 0 here, and there {'is' if count == 1 else 'are'} {count}"
+            return f"; did you mean {before}[{near[0]}]?"
+        return f"; {before} are called {', '.join(names)}" if names else f"; number {before} from 0"
     close = difflib.get_close_matches(full, known, n=1, cutoff=0.6)
     if close:
         return f"; did you mean {close[0]!r}?"

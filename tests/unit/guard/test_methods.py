@@ -123,7 +123,7 @@ def test_the_search_lends_its_ranges(put: Put) -> None:
     assert not found.success
     assert str(found.methods) == str(direct)
     text = " ".join(str(found).split())
-    assert "The design is a straight spring, number 1 of 2 here. Sized freely between the same bounds it would" in text
+    assert "The design is a straight spring, number 1 of 2 here. Of usual parts between these bounds it would" in text
     assert "No part of the stock list fits." in text
 
 
