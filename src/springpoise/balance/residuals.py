@@ -15,7 +15,7 @@ from springpoise.mechanism import Mechanism
 from springpoise.mechanism.travel import joint_units_of
 from springpoise.tables import degrees, millimetres, number
 
-__all__ = ["Residual", "poses_of_joints", "poses_over", "residual", "residual_at", "shown_pose", "unit_of"]
+__all__ = ["Residual", "joint_unit_of", "poses_of_joints", "poses_over", "residual", "residual_at", "shown_pose"]
 
 USUAL_POSES, USUAL_POSES_OF_SEVERAL = 181, 600
 
@@ -48,10 +48,10 @@ class Residual:
         return self.rms / self.peak_gravity_torque if self.peak_gravity_torque > 0 else math.nan
 
     def __str__(self) -> str:
-        what = "torque" if self.unit == "N*m" else "force"
+        what, kind = ("torque", "rad") if self.unit == "N*m" else ("force", "m")
         return (
             f"worst {number(self.worst, self.unit)} ({100 * self.worst_fraction:.2f} % of the peak gravity {what}) "
-            f"at {shown_pose(self.worst_at, self.unit)}, rms {number(self.rms, self.unit)} "
+            f"at {shown_pose(self.worst_at, kind)}, rms {number(self.rms, self.unit)} "
             f"({100 * self.rms_fraction:.2f} %)"
         )
 
@@ -84,11 +84,11 @@ def residual_at(mechanism: Mechanism, q: NDArray[np.float64], gravity: Any = Non
     """What is left at poses that were checked, shape (p,), or (p, n) for n joints: of all joints together."""
     torque = np.broadcast_to(mechanism.holding_torque(q, gravity), q.shape)
     gravity_torque = np.broadcast_to(mechanism.gravity_torque(q, gravity), q.shape)
-    unit = unit_of(mechanism)
+    kind = joint_unit_of(mechanism)
     if not np.all(np.isfinite(torque)):
         bad = q[np.argwhere(~np.isfinite(torque))[0][0]]
         raise InputError(
-            f"mechanism.holding_torque must be finite over the poses, got NaN at {shown_pose(bad, unit)}; "
+            f"mechanism.holding_torque must be finite over the poses, got NaN at {shown_pose(bad, kind)}; "
             "is an end of a cable inside a disc there?"
         )
     at = int(np.argmax(np.abs(torque)))
@@ -99,12 +99,12 @@ def residual_at(mechanism: Mechanism, q: NDArray[np.float64], gravity: Any = Non
         rms=float(np.sqrt(np.mean(torque**2))),
         peak_gravity_torque=float(np.max(np.abs(gravity_torque))),
         poses=len(q),
-        unit=unit,
+        unit="N*m" if kind == "rad" else "N",
     )
 
 
-def unit_of(mechanism: Mechanism) -> str:
-    """``"N*m"`` for revolute joints, ``"N"`` for prismatic ones.
+def joint_unit_of(mechanism: Mechanism) -> str:
+    """``"rad"`` for revolute joints, ``"m"`` for prismatic ones.
 
     Raises
     ------
@@ -114,12 +114,12 @@ def unit_of(mechanism: Mechanism) -> str:
     kinds = set(joint_units_of(mechanism.linkage))
     if len(kinds) > 1:
         raise InputError("mechanism must have joints of one kind, got both revolute and prismatic ones")
-    return "N" if kinds == {"m"} else "N*m"
+    return kinds.pop()
 
 
-def shown_pose(pose: Any, unit: str = "N*m") -> str:
-    """A pose as text, of joints whose torques are in ``unit``."""
-    shown = degrees if unit == "N*m" else millimetres
+def shown_pose(pose: Any, joint_unit: str = "rad") -> str:
+    """A pose as text, of joints in ``"rad"`` or ``"m"``."""
+    shown = degrees if joint_unit == "rad" else millimetres
     return ", ".join(shown(float(value)) for value in np.atleast_1d(np.asarray(pose, dtype=np.float64)))
 
 

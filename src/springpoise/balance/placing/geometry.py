@@ -21,10 +21,11 @@ from springpoise.balance.placing.problem import Problem, built, recorded
 from springpoise.balance.placing.result import ACTIVE, PlacedKnob, PlacedLimit, Placement
 from springpoise.balance.placing.search import BAD, FEASIBLE, Ended, chosen_starts, gains_at, run_start
 from springpoise.balance.placing.shares import layout_of, nominal, sizable
-from springpoise.balance.residuals import poses_of_joints, residual_at, shown_pose, unit_of
+from springpoise.balance.residuals import poses_of_joints, residual_at
 from springpoise.errors import InputError, InputTypeError
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism
+from springpoise.mechanism.travel import joint_units_of
 from springpoise.paths import Disc
 from springpoise.units import ScalarLike
 
@@ -235,15 +236,14 @@ def _result(plain: Plain, best: Ended, problem: Problem | str, starts: int, reac
     limits = limits_of(mechanism, plain.q, plain.rules, values)
     exact = isinstance(problem, Problem)
     gains: tuple[Any, Any] = gains_at(problem, best.unknowns) if isinstance(problem, Problem) else (None, None)
-    judged = []
+    judged, kind = [], joint_units_of(mechanism.linkage)[0]
     for i, limit in enumerate(limits):
         margin, value, allowed, at = worst_of(limit, plain.q)
-        where = shown_pose(at, unit_of(mechanism))
         active = margin <= ACTIVE * limit.scale
         if active and margin >= -FEASIBLE * limit.scale:
             margin = max(margin, 0.0)  # the solver's rounding
         gain = float(gains[1][i]) / limit.scale if exact else None
-        judged.append(PlacedLimit(limit.name, limit.unit, value, allowed, limit.side, margin, at, where, active, gain))
+        judged.append(PlacedLimit(limit.name, limit.unit, value, allowed, limit.side, margin, at, kind, active, gain))
     helpful, left_out = [], []
     for i, mount in enumerate(mechanism.springs):
         torque = np.asarray(mechanism.with_springs(mount).spring_torque(plain.q))

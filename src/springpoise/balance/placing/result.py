@@ -10,7 +10,7 @@ import attrs
 
 from springpoise.balance.chains.fit import JointResidual
 from springpoise.balance.fit import _described
-from springpoise.balance.residuals import Residual
+from springpoise.balance.residuals import Residual, shown_pose
 from springpoise.errors import NoSolution
 from springpoise.mechanism import Mechanism
 from springpoise.tables import degrees, facts, millimetres, number
@@ -81,9 +81,9 @@ class PlacedLimit:
     margin: float
     """How far inside; negative outside."""
     at: Any
-    """That pose [rad]; of several joints a tuple with a value each."""
-    place: str
-    """That pose as text."""
+    """That pose, in ``joint_unit``; of several joints a tuple with a value each."""
+    joint_unit: str
+    """``"rad"``, or ``"m"`` where the joints slide."""
     active: bool
     """Whether it is reached."""
     gain: float | None
@@ -91,7 +91,7 @@ class PlacedLimit:
 
     def __str__(self) -> str:
         value, allowed, margin = (_quantity(v, self.unit) for v in (self.value, self.allowed, self.margin))
-        text = f"{value}, {self.side} {allowed}, at {self.place}"
+        text = f"{value}, {self.side} {allowed}, at {shown_pose(self.at, self.joint_unit)}"
         return f"{text}: reached" if self.active and self.margin >= 0.0 else f"{text}: margin {margin}"
 
 
