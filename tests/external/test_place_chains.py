@@ -15,7 +15,7 @@ from scipy.optimize import differential_evolution, linprog
 
 from springpoise import Body, ExtensionSpring, FourBar, Mechanism, Point, SpringMount, Straight, ZeroLengthSpring
 from springpoise.balance import ChainSpring, balance_chain, place
-from springpoise.linkages import Link, PlanarChain
+from springpoise.linkages import Link, PlanarChain, SpatialChain, SpatialLink
 
 GRAVITY = 9.80665
 UPPER = Link("upper", Body(1.4, (0.16, 0)), length=0.32, carried=Body(0.12, (0, 0)))
@@ -184,3 +184,47 @@ def test_a_four_bar_with_a_spring_on_each_ground_pivot():
     first, second = (mount.spring.rate for mount in found.mechanism.springs)
     assert first * 0.08 * found.values["b1"] == pytest.approx(GRAVITY * n1, rel=1e-5)
     assert second * 0.07 * found.values["b3"] == pytest.approx(GRAVITY * n3, rel=1e-5)
+
+
+def test_a_spatial_chain_on_spherical_joints():
+    """Springs from the ground alone: k b + k' b' = 0 on the last link, for all rotations.
+
+    Two springs on the last of two links with k b = -k' b' do not couple the links, and their anchors
+    a, a' straight above the first joint carry both moments: l1 (k a + k' a') = g M1 and k a b + k' a' b' = g M2
+    (the idea is Deepak and Ananthasuresh's, 2012, Journal of Mechanisms and Robotics, doi 10.1115/1.4006521).
+    """
+
+    def ball(name, origin, body):
+        return [
+            SpatialLink(f"{name} yaw", origin=origin, axis=(0, 0, 1)),
+            SpatialLink(f"{name} pitch", axis=(0, 1, 0)),
+            SpatialLink(name, body, axis=(1, 0, 0)),
+        ]
+
+    limb = SpatialChain(
+        [*ball("upper", (0, 0, 0), Body(1.4, (0.16, 0, 0))), *ball("fore", (0.32, 0, 0), Body(0.9, (0.15, 0, 0)))]
+    )
+    m1, m2 = 1.4 * 0.16 + 0.32 * 0.9, 0.9 * 0.15
+
+    def build(first, second, behind):
+        springs = [
+            SpringMount(ZeroLengthSpring(150.0), Straight(Point("ground", (0, 0, first)), Point("fore", (0.1, 0, 0)))),
+            SpringMount(
+                ZeroLengthSpring(150.0), Straight(Point("ground", (0, 0, second)), Point("fore", (-behind, 0, 0)))
+            ),
+        ]
+        return Mechanism(limb, springs=springs, travel=[(-1.0, 1.0)] * 6)
+
+    found = place(
+        build,
+        knobs={"first": (0.02, 0.2), "second": (0.002, 0.05), "behind": (0.05, 0.15)},
+        fit="rate",
+        norm="rms",
+        starts=2,
+        over=build(0.1, 0.01, 0.1).poses(60),
+    ).require()
+    k1, k2 = (mount.spring.rate for mount in found.mechanism.springs)
+    v = found.values
+    assert k1 * 0.1 == pytest.approx(k2 * v["behind"], rel=1e-4)
+    assert 0.32 * (k1 * v["first"] + k2 * v["second"]) == pytest.approx(GRAVITY * m1, rel=1e-4)
+    assert k1 * v["first"] * 0.1 - k2 * v["second"] * v["behind"] == pytest.approx(GRAVITY * m2, rel=1e-4)
