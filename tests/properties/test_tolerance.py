@@ -227,7 +227,7 @@ def test_threads_and_groups_of_chunks_change_nothing(builds, monkeypatch):
     alone = scatter(mech, SPREADS, builds=builds, over=Q, seed=5)
     with ThreadPoolExecutor(3) as threads:
         for tasks in (1, 2, 24):
-            monkeypatch.setattr("springpoise.tolerance.running.TASKS", tasks)
+            monkeypatch.setattr("springpoise.executors.TASKS", tasks)
             shared = scatter(mech, SPREADS, builds=builds, over=Q, seed=5, executor=threads)
             assert np.array_equal(alone.worst, shared.worst)
             assert np.array_equal(alone.bands, shared.bands)

@@ -9,11 +9,11 @@ import attrs
 import numpy as np
 
 from springpoise.balance.amounts import best_amounts
-from springpoise.balance.residuals import Residual, poses_over, residual
+from springpoise.balance.residuals import Residual, poses_over, residual, shown_pose
 from springpoise.errors import InputError, InputTypeError, NoSolution
 from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.springs import ScaledSpring
-from springpoise.tables import degrees, facts, number
+from springpoise.tables import facts, number
 
 __all__ = ["SpringFit", "fit_springs"]
 
@@ -75,7 +75,7 @@ class SpringFit:
             rows.append((self.mechanism.mount_name(index), times + _described(mount)))
         rows += [(name, "best left out") for name in self.left_out]
         if self.equal_poses:
-            rows.append(("worst at", ", ".join(degrees(q) for q in self.equal_poses)))
+            rows.append(("worst at", shown_pose(self.equal_poses, "rad" if self.residual.unit == "N*m" else "m")))
         return f"spring fit ({self.norm})\n" + facts(rows)
 
 

@@ -20,7 +20,7 @@ from springpoise.tape import Program
 from springpoise.tolerance.adjust_search import Adjusting, adjusted
 from springpoise.tolerance.chunks import checked_builds, checked_seed, chunk_bounds, chunk_count
 from springpoise.tolerance.fields import field_of, list_fields, replaced
-from springpoise.tolerance.recorded import can_vary, nominal, poses_of, size_of, torque_program
+from springpoise.tolerance.recorded import can_vary, nominal, poses_of, size_of, torque_program, torque_units
 from springpoise.tolerance.spreads import Spread, Spreads, refuse_unbuildable, spreads_of
 
 __all__ = ["Adjuster", "Adjusters", "adjusters"]
@@ -87,6 +87,8 @@ class Adjusters:
     """Part of the builds for which residuals and ranges are given [1]."""
     peak_gravity_torque: float
     """Greatest gravity torque of the mechanism as drawn over the poses [N·m]."""
+    torque_unit: str = "N*m"
+    """Unit of the joint's torque: ``"N*m"``, or ``"N"`` of a prismatic joint."""
 
     @property
     def residual_before(self) -> float:
@@ -105,8 +107,8 @@ class Adjusters:
             return "no single adjuster makes these builds better"
         best = self.rows[0]
         return (
-            f"{best.name} alone brings {100 * self.coverage:g} % of the builds from {number(self.residual_before, 'N*m')} "
-            f"to {number(best.residual, 'N*m')}"
+            f"{best.name} alone brings {100 * self.coverage:g} % of the builds from {number(self.residual_before, self.torque_unit)} "
+            f"to {number(best.residual, self.torque_unit)}"
         )
 
     @property
@@ -148,7 +150,7 @@ class Adjusters:
         size, cover = self.peak_gravity_torque, f"{100 * self.coverage:g} %"
 
         def torque(value: float) -> str:
-            return number(value, "N*m") + (f" ({100 * value / size:.2f} %)" if size > 0 else "")
+            return number(value, self.torque_unit) + (f" ({100 * value / size:.2f} %)" if size > 0 else "")
 
         lines = [("none", "", torque(self.residual_before), "", "")]
         for row in self.rows:
@@ -301,6 +303,7 @@ def adjusters(
         builds=count,
         coverage=float(coverage),
         peak_gravity_torque=float(size_of(mechanism, q, gravity)[0]),
+        torque_unit=torque_units(mechanism)[0],
     )
 
 

@@ -23,6 +23,7 @@ from springpoise.tolerance.recorded import (
     poses_of,
     size_of,
     torque_program,
+    torque_units,
     torques_of,
 )
 from springpoise.tolerance.spreads import Spread, Spreads, refuse_unbuildable, spreads_of
@@ -76,23 +77,23 @@ class Corners:
         return "no build in the box is worse at these poses" if self.exact else "no worse build was found in the box"
 
     def __str__(self) -> str:
-        size = self.peak_gravity_torque
+        size, unit = self.peak_gravity_torque, torque_units(self.mechanism)[self.joint]
         share = f" ({100 * self.worst / size:.2f} % of the peak gravity torque)" if size > 0 else ""
         percent = f" ({100 * self.linear_error / self.worst:+.2f} %)" if self.worst > 0 else ""
         rows = [
             ("status", self.status),
             ("searched", self.certificate),
-            ("worst residual", f"{number(self.worst, 'N*m')}{share} at {pose_text(self.mechanism, self.pose)}"),
-            ("as drawn", number(self.nominal, "N*m")),
+            ("worst residual", f"{number(self.worst, unit)}{share} at {pose_text(self.mechanism, self.pose)}"),
+            ("as drawn", number(self.nominal, unit)),
             (
                 "to first order",
-                f"{number(self.linear, 'N*m')}; the true one differs by {number(self.linear_error, 'N*m')}{percent}",
+                f"{number(self.linear, unit)}; the true one differs by {number(self.linear_error, unit)}{percent}",
             ),
         ]
-        rows += [(f"share of {name}", number(value, "N*m")) for name, value in self.shares]
+        rows += [(f"share of {name}", number(value, unit)) for name, value in self.shares]
         for name, value in self.values.items():
-            unit = field_of(self.mechanism, name).unit
-            rows.append((f"  {name}", f"{number(value, unit)}, drawn {number(self.drawn[name], unit)}"))
+            own = field_of(self.mechanism, name).unit
+            rows.append((f"  {name}", f"{number(value, own)}, drawn {number(self.drawn[name], own)}"))
         return "worst corner\n" + facts(rows)
 
 

@@ -18,7 +18,17 @@ from springpoise.tables import degrees, millimetres
 from springpoise.tape import Program, record
 from springpoise.tolerance.fields import canonical_name, list_fields, replaced
 
-__all__ = ["can_vary", "columns_of", "nominal", "pose_text", "poses_of", "size_of", "torque_program", "torques_of"]
+__all__ = [
+    "can_vary",
+    "columns_of",
+    "nominal",
+    "pose_text",
+    "poses_of",
+    "size_of",
+    "torque_program",
+    "torque_units",
+    "torques_of",
+]
 
 Array = NDArray[np.float64]
 
@@ -79,6 +89,11 @@ def size_of(mechanism: Mechanism, q: Array, gravity: Any) -> Array:
     """Peak gravity torque of each joint over the poses, shape (joints,) [N·m]."""
     torque = np.asarray(mechanism.gravity_torque(q, gravity), dtype=np.float64)
     return np.asarray(np.max(np.abs(torque.reshape(-1, mechanism.linkage.joint_count)), axis=0))
+
+
+def torque_units(mechanism: Mechanism) -> tuple[str, ...]:
+    """Unit of each joint's torque: ``"N*m"``, or ``"N"`` of a prismatic one."""
+    return tuple("N" if kind == "m" else "N*m" for kind in joint_units_of(mechanism.linkage))
 
 
 def torque_program(

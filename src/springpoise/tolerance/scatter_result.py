@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from typing import Any
 
 import attrs
@@ -16,7 +16,7 @@ from springpoise.mechanism import Mechanism
 from springpoise.tables import facts, number
 from springpoise.tolerance.chunks import CHUNK, chunk_bounds
 from springpoise.tolerance.fields import field_of, replaced
-from springpoise.tolerance.recorded import pose_text
+from springpoise.tolerance.recorded import pose_text, torque_units
 from springpoise.tolerance.spreads import PERCENT, Spreads
 
 __all__ = ["Scatter", "limits_of"]
@@ -129,13 +129,20 @@ class Scatter:
         return replaced(self.mechanism, self.values_of(build))
 
     @property
+    def _units(self) -> tuple[str, ...]:
+        return torque_units(self.mechanism)
+
+    @property
     def _rows(self) -> Array:
         return self.worst.reshape(self.builds, -1)
 
     def _kept(self, limit: Any) -> int:
         if limit is None and self.limit is None:
-            raise InputError("limit must be a torque in N*m where the call had none, got None")
-        limits = limits_of(self.limit if limit is None else limit, np.atleast_1d(self.peak_gravity_torque))
+            raise InputError(
+                f"limit must be a torque in {' or '.join(sorted(set(self._units)))} where the call had none, got None"
+            )
+        given = self.limit if limit is None else limit
+        limits = limits_of(given, np.atleast_1d(self.peak_gravity_torque), self._units)
         return int(np.count_nonzero(np.all(self._rows <= limits, axis=1)))
 
     def _lines(self) -> Iterator[tuple[str, str]]:
@@ -149,12 +156,15 @@ class Scatter:
         levels = ((0.5, "half of the builds"), (0.95, "95 % of the builds"), (0.99, "99 % of the builds"))
         found = np.reshape(self.quantile([level for level, _ in levels]), (len(levels), -1))
         for joint, name in enumerate(names):
-            yield f"as drawn{name}", _torque(drawn[joint], size[joint])
+            unit = self._units[joint]
+            yield f"as drawn{name}", _torque(drawn[joint], size[joint], unit)
             for row, (_, text) in enumerate(levels):
-                yield f"{text}{name}", f"within {_torque(found[row, joint], size[joint])}"
+                yield f"{text}{name}", f"within {_torque(found[row, joint], size[joint], unit)}"
         if self.limit is not None:
             low, high = self.yield_interval()
-            text = ", ".join(number(float(one), "N*m") for one in np.atleast_1d(self.limit))
+            text = ", ".join(
+                number(float(one), unit) for one, unit in zip(np.atleast_1d(self.limit), self._units, strict=True)
+            )
             yield (
                 f"within {text}",
                 f"{100 * self.yield_within():.2f} % of the builds ({100 * low:.2f} to {100 * high:.2f} %)",
@@ -167,7 +177,7 @@ class Scatter:
         torque = np.abs(self.mechanism_of(build).holding_torque(self.poses, self.gravity)).reshape(len(self.poses), -1)
         pose, joint = np.unravel_index(int(np.argmax(torque / np.where(size > 0, size, 1.0))), torque.shape)
         at = pose_text(self.mechanism, self.poses[pose])
-        yield f"worst build, {build}", f"{_torque(torque[pose, joint], size[joint])} at {at}"
+        yield f"worst build, {build}", f"{_torque(torque[pose, joint], size[joint], self._units[joint])} at {at}"
         for name, value in self.values_of(build).items():
             field = field_of(self.mechanism, name)
             yield f"  {name}", f"{number(value, field.unit)}, drawn {number(field.value, field.unit)}"
@@ -180,8 +190,10 @@ class Scatter:
         return f"<Scatter of {self.builds} builds: {self.status}>"
 
 
-def limits_of(limit: Any, size: Array) -> Array:
-    """Limits of the joints [N·m], shape (joints,); a percentage is one of the peak gravity torque ``size``.
+def limits_of(limit: Any, size: Array, torque_units: Sequence[str] | None = None) -> Array:
+    """Limits of the joints, shape (joints,); a percentage is one of the peak gravity torque ``size``.
+
+    ``torque_units`` are the units of the joints' torques, ``"N*m"`` or ``"N"``; None for N·m.
 
     Raises
     ------
@@ -193,15 +205,15 @@ def limits_of(limit: Any, size: Array) -> Array:
     if len(limits) != size.size:
         raise InputError(f"limit must be one for each of {size.size} joints, got {len(limits)}")
     found = []
-    for one, peak in zip(limits, size, strict=True):
+    for one, peak, unit in zip(limits, size, torque_units or ("N*m",) * size.size, strict=True):
         percent = PERCENT.fullmatch(one) if isinstance(one, str) else None
-        value = units.scalar_si(one, "N*m", "limit") if percent is None else float(peak) * float(percent[1]) / 100
+        value = units.scalar_si(one, unit, "limit") if percent is None else float(peak) * float(percent[1]) / 100
         if not isinstance(value, float) or not value >= 0.0:
-            raise InputError(f"limit must be >= 0 N*m, got {one!r}")
+            raise InputError(f"limit must be >= 0 {unit}, got {one!r}")
         found.append(value)
     return np.array(found)
 
 
-def _torque(value: float, size: float) -> str:
+def _torque(value: float, size: float, unit: str) -> str:
     share = f" ({100 * value / size:.2f} %)" if size > 0 else ""
-    return f"{number(float(value), 'N*m')}{share}"
+    return f"{number(float(value), unit)}{share}"

@@ -21,6 +21,7 @@ from springpoise.tolerance.recorded import (
     poses_of,
     size_of,
     torque_program,
+    torque_units,
     torques_of,
 )
 from springpoise.tolerance.steps import step_of, step_text
@@ -51,6 +52,8 @@ class Sensitivity:
     """Number of the pose at which it is."""
     place: str
     """That pose as text."""
+    torque_unit: str = "N*m"
+    """Unit of that joint's torque: ``"N*m"``, or ``"N"`` of a prismatic joint."""
 
     @property
     def worst(self) -> float:
@@ -68,7 +71,9 @@ class Sensitivity:
         return abs(self.worst * self.value) / 100.0
 
     def __str__(self) -> str:
-        return f"{step_text(self.unit)} of {self.name} is worth {number(self.per_step, 'N*m')} at {self.place}"
+        return (
+            f"{step_text(self.unit)} of {self.name} is worth {number(self.per_step, self.torque_unit)} at {self.place}"
+        )
 
 
 @attrs.frozen(eq=False, kw_only=True)
@@ -105,8 +110,8 @@ class Sensitivities:
         lines = []
         for row in self.rows:
             share = f"{100 * row.per_step / size:.3f} %" if size > 0 else ""
-            percent = number(row.per_percent, "N*m") if row.value else ""
-            effect = number(row.per_step, "N*m")
+            percent = number(row.per_percent, row.torque_unit) if row.value else ""
+            effect = number(row.per_step, row.torque_unit)
             lines.append(
                 (row.name, number(row.value, row.unit), step_text(row.unit), effect, share, percent, row.place)
             )
@@ -182,6 +187,7 @@ def sensitivities(
                 joint=int(joint),
                 pose=int(pose),
                 place=pose_text(mechanism, q[pose]),
+                torque_unit=torque_units(mechanism)[joint],
             )
         )
     rows.sort(key=lambda row: (-row.per_step, row.name))

@@ -270,3 +270,22 @@ def test_a_setting_that_cannot_be_built_ranks_last():
     assert "Body.mass must be >= 0 kg" in str(found[weight].obstacle)
     assert "cannot be set as needed" in str(found)
     assert found[ANCHOR].range[0] >= found[ANCHOR].whole_range[0]
+
+
+def test_what_slides_is_told_in_newtons():
+    """A carriage of 2 kg on an upright slide, weight 19.6 N, on a spring of which every newton of tension counts whole."""
+    slide = PlanarChain([Link("carriage", Body(2.0, (0, 0)), joint="prismatic")])
+    path = Straight(Point("ground", (0.5, 0)), Point("carriage", (0, 0)))
+    spring = ExtensionSpring(100, free_length=0.05)
+    lift = Mechanism(slide, springs=SpringMount(spring, path), travel=(0.0, 0.1), gravity=(-9.80665, 0.0))
+    spreads = {"springs[0].spring.rate": Spread.normal("5 %")}
+    assert str(sensitivities(lift).rows[0]) == "1 N of springs[0].spring.initial_tension is worth 1.000 N at 0 mm"
+    found = scatter(lift, spreads, builds=200, limit=5.0)
+    assert found.yield_within("27 N") == found.yield_within(27.0)
+    with pytest.raises(UnitError, match=r"limit must be a value in N, got '27 N\*m'"):
+        found.yield_within("27 N*m")
+    with pytest.raises(InputError, match="limit must be a torque in N where the call had none, got None"):
+        scatter(lift, spreads, builds=200).yield_within()
+    for result in (sensitivities(lift), found, corners(lift, spreads), adjusters(lift, spreads, builds=200)):
+        assert " N " in str(result)
+        assert "N*m" not in str(result)
