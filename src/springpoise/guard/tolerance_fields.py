@@ -81,7 +81,7 @@ def with_stand_ins(
         spring = ExtensionSpring(1.0, free_length=0.1, initial_tension=1.0, longest=0.2)
         path: Any = Straight(Point("ground", (0.0, 0.1)), attach)
         if design.pulley is not None:
-            path = Cable(Point("ground", design.pulley.spring_end), design.pulley.disc(0.1j, 1j), attach)
+            path = Cable(Point("ground", design.pulley.spring_end), design.pulley.disc((0.0, 0.1), (0.0, 1.0)), attach)
         mounts.append(SpringMount(spring, path))
     try:
         return mechanism.with_springs(mounts)

@@ -42,7 +42,9 @@ class CompressionSpring:
     """Length with all coils touching [m], >= 0 and below ``free_length``."""
 
     def __attrs_post_init__(self) -> None:
-        if np.any(np.asarray(self.solid_length >= self.free_length)):
+        if units.are_known(self.solid_length, self.free_length) and np.any(
+            np.asarray(self.solid_length >= self.free_length)
+        ):
             raise InputError(
                 f"CompressionSpring.solid_length must be < free_length ({self.free_length}) m, got {self.solid_length}"
             )

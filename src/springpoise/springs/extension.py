@@ -51,7 +51,7 @@ class ExtensionSpring:
     """Greatest permissible length inside the hooks [m], beyond ``free_length``; None for not given."""
 
     def __attrs_post_init__(self) -> None:
-        if self.longest is not None and np.any(np.asarray(self.longest <= self.free_length)):
+        if units.are_known(self.longest, self.free_length) and np.any(np.asarray(self.longest <= self.free_length)):
             raise InputError(
                 f"ExtensionSpring.longest must be > free_length ({self.free_length}) m, got {self.longest}"
             )

@@ -48,7 +48,7 @@ class TorsionSpring:
     def __attrs_post_init__(self) -> None:
         if self.working_range is not None and not np.all(np.asarray(self.working_range[0] < self.working_range[1])):
             raise InputError(f"TorsionSpring.working_range must be (lower, higher) rad, got {self.working_range}")
-        if np.any(np.asarray(self.winding_friction >= 1.0)):
+        if units.are_known(self.winding_friction) and np.any(np.asarray(self.winding_friction >= 1.0)):
             raise InputError(f"TorsionSpring.winding_friction must be < 1, got {self.winding_friction}")
 
     @property

@@ -47,6 +47,7 @@ from springpoise.units.convert import radians as radians
 from springpoise.units.convert import scalar_si as scalar_si
 from springpoise.units.convert import second as second
 from springpoise.units.convert import triple as triple
+from springpoise.units.fields import are_known as are_known
 from springpoise.units.fields import comparable as comparable
 from springpoise.units.fields import fraction as fraction
 from springpoise.units.fields import named_fields as named_fields

@@ -133,7 +133,9 @@ def _array_si(value: Any, unit: str, name: str) -> Any:
 
 def _wrong_type(value: Any, unit: str, name: str) -> InputTypeError:
     # Made only when it is needed: the text of an array costs far more than its conversion.
-    return InputTypeError(f"{name} must be {_described(unit)}, got {reprlib.repr(value)} of type {type(value).__name__}")
+    return InputTypeError(
+        f"{name} must be {_described(unit)}, got {reprlib.repr(value)} of type {type(value).__name__}"
+    )
 
 
 def _floats(value: Any) -> NDArray[np.float64] | None:

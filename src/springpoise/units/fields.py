@@ -116,6 +116,11 @@ def _complain(instance: object, attribute: attrs.Attribute[Any], rule: str, valu
     raise InputError(f"{type(instance).__name__}.{attribute.name} must be {rule}{suffix}, got {value}")
 
 
+def are_known(*values: object) -> bool:
+    """Whether all values can be compared here and now: floats and arrays, not recorded variables."""
+    return all(isinstance(value, float | np.ndarray) for value in values)
+
+
 def positive(instance: object, attribute: attrs.Attribute[Any], value: Any) -> None:
     """Validator: greater than zero."""
     if isinstance(value, float | np.ndarray) and not np.all(ok := value > 0):

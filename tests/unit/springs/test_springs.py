@@ -12,6 +12,7 @@ from springpoise import CompressionSpring, ConstantForceSpring, ExtensionSpring,
 from springpoise.errors import InputError, InputTypeError, UnitError
 from springpoise.springs import ScaledSpring
 from springpoise.springs.protocol import hysteresis_of, working_range_of
+from springpoise.tape import record
 
 EXTENSION = ExtensionSpring(1200.0, free_length=0.12, initial_tension=18.0, longest=0.31)
 COMPRESSION = CompressionSpring(8000.0, free_length=0.09, solid_length=0.045)
@@ -275,3 +276,24 @@ def test_working_range_of_one_value():
         InputTypeError, match=r"^TorsionSpring\.working_range must be a pair in rad, got 1\.0 of type float$"
     ):
         TorsionSpring(1, working_range=1.0)
+
+
+def _extension(free_length):
+    return ExtensionSpring(900, free_length=free_length, initial_tension=12, longest=0.3)
+
+
+def _compression(free_length):
+    return CompressionSpring(900, free_length=free_length, solid_length=0.02)
+
+
+def _wound(friction):
+    return TorsionSpring(2.0, free_angle=0.1, winding_friction=friction)
+
+
+@pytest.mark.parametrize(
+    ("make", "value", "x"), [(_extension, 0.12, 0.2), (_compression, 0.12, 0.1), (_wound, 0.1, 0.7)]
+)
+def test_each_dimension_may_vary_from_build_to_build(make, value, x):
+    """Recorded variables cannot be compared while a spring is made: its limits are checked on numbers."""
+    program = record(lambda v, x: make(v).load(x), inputs=("v", "x"))
+    assert program.python_function()(value, x) == pytest.approx(make(value).load(x), rel=1e-15)

@@ -191,7 +191,7 @@ def candidate(routing: Routing, stock: Stock, index: int, count: int, radius: fl
         index=index,
         count=count,
         attach_radius=radius,
-        attach_angle=routing.attach_angle,
+        attach_angle=math.remainder(routing.attach_angle, 2.0 * math.pi),
         anchor_height=height,
         anchor_angle=routing.anchor_angle,
         residual=residual(mechanism, q),

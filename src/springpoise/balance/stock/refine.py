@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import math
-from typing import NamedTuple
+from collections.abc import Callable, Sequence
+from functools import cached_property
+from typing import Any, NamedTuple
 
 import attrs
 import numpy as np
@@ -12,8 +14,12 @@ from numpy.typing import NDArray
 from springpoise.balance.stock.candidates import StockCandidate, candidate, keeps_margin
 from springpoise.balance.stock.lists import Stock
 from springpoise.balance.stock.route import Routing
+from springpoise.carriers import Carrier
+from springpoise.tape import record
 
-__all__ = ["Box", "refined"]
+__all__ = ["Box", "Refiner", "refined"]
+
+Array = NDArray[np.float64]
 
 ITERATIONS = 200
 """At the most so many iterations for each direction of the search."""
@@ -38,35 +44,65 @@ class Box(NamedTuple):
     """[rad]"""
 
 
-def refined(
-    routing: Routing, stock: Stock, start: StockCandidate, box: Box, step: float, margin: float
-) -> StockCandidate:
-    """The candidate within the box whose worst residual is least.
+@attrs.frozen(eq=False)
+class Refiner:
+    """What is the same for all candidates that are refined."""
 
-    Radius and height are rounded to multiples of ``step``, with a ``margin`` to both ends of the
-    spring's lengths. Comes back as it was where rounding leaves nothing better. ``routing`` is the
-    start's.
+    routing: Routing
+    """Any routing of the grid."""
+    stock: Stock
+    box: Box
+    step: float
+    """Radius and height are rounded to multiples of it [m]."""
+    margin: float
+    """Distance to both ends of the spring's lengths [m]."""
+
+    @cached_property
+    def base(self) -> Array:
+        """Torque that is to be balanced [N·m], shape (poses,)."""
+        q = self.routing.poses
+        return np.broadcast_to(self.routing.mechanism.holding_torque(q), q.shape)
+
+    @cached_property
+    def geometry(self) -> Callable[..., list[Array]]:
+        """``pull`` and ``lever`` (see ``Geometry``) over the poses, from a place in the box: recorded, so that it is quick."""
+        linkage = self.routing.mechanism.linkage
+
+        def formula(*inputs: Carrier) -> tuple[Carrier, Carrier]:
+            radius, height, anchor_angle, attach_skew, q = inputs
+            there = self.turned(anchor_angle, attach_skew)
+            path = there.path(radius, height)
+            return path.length(linkage, q) - there.zero_force_length(radius, height), path.gradient(linkage, q)[0]
+
+        return record(formula, inputs=(*Box._fields, "q")).numpy_function()
+
+    def turned(self, anchor_angle: Carrier, attach_skew: Carrier) -> Routing:
+        """The routing in other directions."""
+        return attrs.evolve(self.routing, anchor_angle=anchor_angle, attach_skew=attach_skew)
+
+    def worst(self, start: StockCandidate, place: Sequence[float]) -> float:
+        """Worst residual of the start's springs at a place in the box; very large where they do not fit."""
+        spring: Any = start.mechanism.springs[-1].spring
+        _, height, anchor_angle, attach_skew = place
+        pull, lever = (np.broadcast_to(one, self.base.shape) for one in self.geometry(*place, self.routing.poses))
+        shift = float(spring.effective_free_length) if self.routing.pulley is not None else 0.0
+        length = pull + shift
+        low, high = spring.working_range
+        room = self.turned(anchor_angle, attach_skew).room(height)
+        out = max(low + self.margin - length.min(), length.max() - min(high - self.margin, room), 0.0)
+        if not np.all(np.isfinite(length)) or out > 0:
+            return 1e6 * (1.0 + (out if math.isfinite(out) else 1.0))
+        return float(np.max(np.abs(self.base + start.count * spring.load(length) * lever)))
+
+
+def refined(refiner: Refiner, start: StockCandidate, routing: Routing) -> StockCandidate:
+    """The candidate within the box whose worst residual is least; ``routing`` is the start's.
+
+    Comes back as it was where rounding leaves nothing better.
     """
     import scipy.optimize
 
-    spring = start.mechanism.springs[-1].spring
-    q = routing.poses
-    base = np.broadcast_to(routing.mechanism.holding_torque(q), q.shape)
-
-    def turned(anchor_angle: float, attach_skew: float) -> Routing:
-        return attrs.evolve(routing, anchor_angle=anchor_angle, attach_skew=attach_skew)
-
-    def worst(place: NDArray[np.float64]) -> float:
-        radius, height, anchor_angle, attach_skew = whole(place)
-        geometry = turned(anchor_angle, attach_skew).geometry(np.array([radius]), height)
-        shift = float(spring.effective_free_length) if routing.pulley is not None else 0.0  # type: ignore[attr-defined]
-        length = geometry.pull[0] + shift
-        low, high = spring.working_range  # type: ignore[attr-defined]
-        out = max(low + margin - length.min(), length.max() - min(high - margin, geometry.room), 0.0)
-        if not np.all(np.isfinite(length)) or out > 0:
-            return 1e6 * (1.0 + (out if math.isfinite(out) else 1.0))
-        return float(np.max(np.abs(base + start.count * spring.load(length) * geometry.lever[0])))
-
+    box, step = refiner.box, refiner.step
     begin = np.array([start.attach_radius, start.anchor_height, routing.anchor_angle, routing.attach_skew])
     # Turning a straight spring's two ends together changes nothing but where the pivot is loaded.
     free = [axis for axis in range(len(box)) if routing.pulley is not None or axis != ANCHOR_ANGLE]
@@ -74,10 +110,13 @@ def refined(
     if not wide:
         return start
 
-    def whole(place: NDArray[np.float64]) -> list[float]:
+    def whole(place: Array) -> list[float]:
         every = begin.copy()
         every[wide] = place
         return [float(value) for value in every]
+
+    def worst(place: Array) -> float:
+        return refiner.worst(start, whole(place))
 
     bounds = np.array([box[axis] for axis in wide])
     place, reached = begin[wide], start.residual.worst
@@ -98,16 +137,16 @@ def refined(
         if not reached < (1.0 - WORTHWHILE) * before:
             break
     radius, height, anchor_angle, attach_skew = whole(place)
-    there = turned(anchor_angle, attach_skew)
+    there = refiner.turned(anchor_angle, attach_skew)
     best = start
     for drilled in _roundings((radius, height), (box.radius, box.height), step):
-        one = candidate(there, stock, start.index, start.count, *drilled)
-        if keeps_margin(one, margin) and _has_room(there, one) and one.residual.worst < best.residual.worst:
+        one = candidate(there, refiner.stock, start.index, start.count, *drilled)
+        if keeps_margin(one, refiner.margin) and _has_room(there, one) and one.residual.worst < best.residual.worst:
             best = attrs.evolve(one, refined=True)
     return best
 
 
-def _simplex(place: NDArray[np.float64], bounds: NDArray[np.float64]) -> NDArray[np.float64]:
+def _simplex(place: Array, bounds: Array) -> Array:
     """A corner away from the place, and from the box's edge, in each direction."""
     simplex = np.tile(place, (place.size + 1, 1))
     for axis, (low, high) in enumerate(bounds):

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import cmath
 import math
 from typing import Any, NamedTuple
 
@@ -11,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from springpoise import units
-from springpoise.carriers import Carrier
+from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
@@ -21,6 +20,7 @@ from springpoise.springs import ExtensionSpring
 __all__ = ["Geometry", "PulleyRoute", "Routing"]
 
 Array = NDArray[np.float64]
+Pair = tuple[Carrier, Carrier]
 
 
 def _turn(value: Any) -> str:
@@ -56,14 +56,17 @@ class PulleyRoute:
     """Radius at which the pulley's bearing rubs [m], >= 0."""
 
     def __attrs_post_init__(self) -> None:
-        self.disc(0j, 1j)  # the disc checks what belongs together
+        self.disc((0.0, 0.0), (0.0, 1.0))  # the disc checks what belongs together
 
-    def disc(self, anchor: complex, upward: complex) -> Disc:
-        """The pulley for an anchor, ``upward`` being the direction from pivot to anchor."""
-        sideways = upward / 1j
-        centre = anchor + (self.radius if self.turn == "ccw" else -self.radius) * sideways
+    def centre(self, anchor: Pair, upward: Pair) -> Pair:
+        """Centre of the pulley for an anchor, ``upward`` being the unit vector from pivot to anchor."""
+        side = self.radius if self.turn == "ccw" else -self.radius
+        return anchor[0] + side * upward[1], anchor[1] - side * upward[0]
+
+    def disc(self, anchor: Pair, upward: Pair) -> Disc:
+        """The pulley for an anchor [m], ``upward`` being the unit vector from pivot to anchor."""
         return Disc(
-            Point("ground", (centre.real, centre.imag)),
+            Point("ground", self.centre(anchor, upward)),
             radius=self.radius,
             turn=self.turn,
             bearing_friction=self.bearing_friction,
@@ -109,23 +112,30 @@ class Routing:
     """Where a spring of zero free length balances the arm's weight: its attachment's direction less its anchor's [rad]."""
     pulley: PulleyRoute | None
     """The pulley, or None for a straight spring."""
-    anchor_angle: float = 0.5 * math.pi
+    anchor_angle: Carrier = 0.5 * math.pi
     """Direction of the anchor from the pivot [rad]."""
-    attach_skew: float = 0.0
+    attach_skew: Carrier = 0.0
     """How far the attachment is turned from where a zero free length would want it [rad]."""
 
     @property
-    def attach_angle(self) -> float:
-        """Direction of the attachment in the arm's frame [rad]."""
-        return math.remainder(self.weight_angle + self.anchor_angle + self.attach_skew, 2.0 * math.pi)
+    def attach_angle(self) -> Carrier:
+        """Direction of the attachment in the arm's frame [rad], some turn of it."""
+        return self.weight_angle + self.anchor_angle + self.attach_skew
 
-    def path(self, radius: Carrier, height: float) -> Path:
+    @property
+    def upward(self) -> Pair:
+        """Unit vector from pivot to anchor."""
+        xp = namespace(self.anchor_angle)
+        return xp.cos(self.anchor_angle), xp.sin(self.anchor_angle)
+
+    def path(self, radius: Carrier, height: Carrier) -> Path:
         """The path for an attachment radius (or several) and an anchor height [m]."""
-        upward = cmath.exp(1j * self.anchor_angle)
-        anchor = height * upward
-        attach = Point("arm", (radius * math.cos(self.attach_angle), radius * math.sin(self.attach_angle)))
+        upward = self.upward
+        anchor = height * upward[0], height * upward[1]
+        xp = namespace(self.attach_angle)
+        attach = Point("arm", (radius * xp.cos(self.attach_angle), radius * xp.sin(self.attach_angle)))
         if self.pulley is None:
-            return Straight(Point("ground", (anchor.real, anchor.imag)), attach)
+            return Straight(Point("ground", anchor), attach)
         return Cable(Point("ground", self.pulley.spring_end), self.pulley.disc(anchor, upward), attach)
 
     def geometry(self, radii: Array, height: float) -> Geometry:
@@ -149,21 +159,21 @@ class Routing:
             room=self.room(height),
         )
 
-    def zero_force_length(self, radii: Array, height: float) -> Array:
+    def zero_force_length(self, radii: Carrier, height: Carrier) -> Carrier:
         """Length of the path at which a spring behind a pulley would have no force [m]; 0 for a straight one."""
         if self.pulley is None:
-            return np.zeros_like(radii)
+            return 0.0 * radii
         middle = 0.5 * float(self.poses.min() + self.poses.max())
         path = self.path(radii, height)
         bare = attrs.evolve(self, pulley=None).path(radii, height)
         linkage = self.mechanism.linkage
-        return np.asarray(path.length(linkage, middle) - bare.length(linkage, middle))
+        return path.length(linkage, middle) - bare.length(linkage, middle)
 
     def mount(self, spring: ExtensionSpring, count: int, radius: float, height: float) -> SpringMount:
         """The mount of one candidate."""
         rigid = 0.0
         if self.pulley is not None:
-            zero = float(self.zero_force_length(np.array([radius]), height)[0])
+            zero = float(self.zero_force_length(radius, height))
             rigid = zero - float(spring.effective_free_length)
         return SpringMount(spring, self.path(radius, height), count=count, rigid_length=rigid)
 
@@ -171,7 +181,6 @@ class Routing:
         """Length that a spring may take before it meets the pulley [m]; infinite without one."""
         if self.pulley is None:
             return math.inf
-        upward = cmath.exp(1j * self.anchor_angle)
-        centre = complex(*self.pulley.disc(height * upward, upward).centre.at)
-        away = abs(centre - complex(*self.pulley.spring_end)) ** 2 - self.pulley.radius**2
-        return math.sqrt(away) if away > 0 else 0.0
+        x, y = self.upward
+        away = math.dist(self.pulley.centre((height * x, height * y), (x, y)), self.pulley.spring_end)
+        return math.sqrt(max(away**2 - self.pulley.radius**2, 0.0))

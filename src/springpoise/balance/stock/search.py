@@ -21,7 +21,7 @@ from springpoise.balance.stock.columns import columns
 from springpoise.balance.stock.lists import Stock, read_stock
 from springpoise.balance.stock.misses import Misses
 from springpoise.balance.stock.mounts import Mounts
-from springpoise.balance.stock.refine import Box, refined
+from springpoise.balance.stock.refine import Box, Refiner, refined
 from springpoise.balance.stock.route import PulleyRoute, Routing
 from springpoise.balance.stock.scan import Scan
 from springpoise.errors import InputError, InputTypeError
@@ -168,8 +168,9 @@ def search_stock(
     best = np.lexsort((tally.candidate, tally.worst))[:most]
     rank = [taken(int(tally.candidate[one]), int(tally.mount[one])) for one in best]
     box = Box(*((float(values.min()), float(values.max())) for values in (radii, heights, angles, skews)))
+    refiner = Refiner(mounts[0].routing, listed, box, step, margin)
     better = [
-        refined(mounts[int(tally.mount[one])].routing, listed, found, box, step, margin)
+        refined(refiner, found, mounts[int(tally.mount[one])].routing)
         for one, found in zip(best[:refine], rank, strict=False)
     ]
     # Refining comes first: what it brings below the limit fits.
