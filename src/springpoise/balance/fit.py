@@ -106,7 +106,8 @@ def fit_springs(
     """Best rates and preloads for fixed mounts: a linear program, or bounded least squares.
 
     A torque is linear in a spring's rate and preload as long as the spring pulls in the same
-    poses; the fit is repeated until the poses it assumed are those that come out.
+    poses; the fit is repeated until the poses it assumed are those that come out. A torsion spring is
+    wound by two turns at the most, since the softest that is wound the farthest is often the best.
 
     A spring of your own that has only its three methods is sized as a whole and comes back in a
     ``ScaledSpring``.
