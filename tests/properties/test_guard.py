@@ -36,7 +36,7 @@ from springpoise import (
 from springpoise.balance import MethodAssumptions, PulleyRoute
 from springpoise.errors import PoiseFileError
 from springpoise.guard.files import read_text, text_of
-from springpoise.guard.place import Place
+from springpoise.guard.format.place import Place
 
 positive = st.floats(1e-6, 1e6)
 lengths = st.floats(-10.0, 10.0)
@@ -293,7 +293,7 @@ VALUES = st.one_of(
 @given(st.data())
 def test_no_value_in_any_place_breaks_the_reader(data: st.DataObject) -> None:
     """One value of a good file is replaced by anything: it reads as something else, or says where it is wrong."""
-    from springpoise.guard.reading import document_of
+    from springpoise.guard.format.reading import document_of
 
     tables = tomllib.loads(LIFT.read_text(encoding="utf-8"))
     place: Any = tables

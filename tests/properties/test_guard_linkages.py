@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 
 from springpoise import Body, Friction, Mechanism, guard
 from springpoise.guard.files import read_text
-from springpoise.guard.place import Place
+from springpoise.guard.format.place import Place
 from springpoise.linkages import Coupling, Link, PlanarChain, SpatialChain, SpatialLink
 
 lengths = st.floats(-10.0, 10.0)

@@ -12,7 +12,7 @@ from hypothesis import strategies as st
 
 from springpoise import Arm, Body, JointTravel, Mechanism, Point, SpringMount, Straight, guard
 from springpoise.guard.files import read_text
-from springpoise.guard.place import Place
+from springpoise.guard.format.place import Place
 from springpoise.springs import (
     NITROGEN,
     NITROGEN_VAN_DER_WAALS,

@@ -53,14 +53,16 @@ title, description
 """
 
 from springpoise.guard.amounts import OfPeak
-from springpoise.guard.build_yield import BuildYield
-from springpoise.guard.builds import AdjustedBuilds, SpreadCost
+from springpoise.guard.builds.scattered import AdjustedBuilds, SpreadCost
+from springpoise.guard.builds.study import ToleranceStudy
+from springpoise.guard.builds.tolerances import Adjustable, FieldSpread, Tolerances
+from springpoise.guard.builds.widths import Width
 from springpoise.guard.check import CheckReport, check
 from springpoise.guard.compare import Change, Comparison, TextChange, compare
 from springpoise.guard.document import Payload, PoiseFile
 from springpoise.guard.files import dump, load, save
 from springpoise.guard.joints import JointPose, JointRanges
-from springpoise.guard.limits import (
+from springpoise.guard.limits.mechanism import (
     BalanceAngles,
     HoldingTorque,
     Limit,
@@ -70,17 +72,15 @@ from springpoise.guard.limits import (
     StoredEnergy,
     Stretch,
 )
-from springpoise.guard.methods import MethodsRequest
-from springpoise.guard.openings import OpenSpring
-from springpoise.guard.part_limits import BucklingMargin, FatigueMargin, ServiceTemperature, YieldMargin
+from springpoise.guard.limits.parts import BucklingMargin, FatigueMargin, ServiceTemperature, YieldMargin
+from springpoise.guard.limits.verdict import Case, LimitVerdict
+from springpoise.guard.limits.yields import BuildYield
 from springpoise.guard.part_springs import spring_of
-from springpoise.guard.requests import DesignRequest, FitRequest, SineRequest, Steps, StockRequest
 from springpoise.guard.service import Service
-from springpoise.guard.solve import Design, design
-from springpoise.guard.study import ToleranceStudy
-from springpoise.guard.tolerances import Adjustable, FieldSpread, Tolerances
-from springpoise.guard.verdict import Case, LimitVerdict
-from springpoise.guard.widths import Width
+from springpoise.guard.solving.methods import MethodsRequest
+from springpoise.guard.solving.openings import OpenSpring
+from springpoise.guard.solving.requests import DesignRequest, FitRequest, SineRequest, Steps, StockRequest
+from springpoise.guard.solving.solve import Design, design
 
 __all__ = [
     "Adjustable",

@@ -13,14 +13,14 @@ import numpy as np
 
 from springpoise.errors import InputError, InputTypeError, PoiseFileError, SpringpoiseError
 from springpoise.guard.amounts import celsius, shown
-from springpoise.guard.build_yield import BuildYield
-from springpoise.guard.builds import Builds
+from springpoise.guard.builds.scattered import Builds
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.files import load
 from springpoise.guard.joints import poses_over, shown_pose
-from springpoise.guard.limits import Limit
+from springpoise.guard.limits.mechanism import Limit
+from springpoise.guard.limits.verdict import Case, LimitVerdict
+from springpoise.guard.limits.yields import BuildYield
 from springpoise.guard.service import at_temperature, service_of
-from springpoise.guard.verdict import Case, LimitVerdict
 from springpoise.mechanism.gas_mounting import check_gas_mounts
 from springpoise.springs import SpringWarning
 from springpoise.tables import grid

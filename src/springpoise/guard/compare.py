@@ -19,6 +19,7 @@ from springpoise.guard.amounts import (
     text_of_share,
     text_of_torque_or_share,
 )
+from springpoise.guard.builds.tolerances import Tolerances
 from springpoise.guard.check import builds_of, document_at
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.joints import (
@@ -31,8 +32,7 @@ from springpoise.guard.joints import (
     poses_over,
     shown_pose,
 )
-from springpoise.guard.limits import coordinate_unit
-from springpoise.guard.tolerances import Tolerances
+from springpoise.guard.limits.mechanism import coordinate_unit
 from springpoise.mechanism import Mechanism
 from springpoise.mechanism.travel import joint_units_of
 from springpoise.tables import grid

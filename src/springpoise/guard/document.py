@@ -10,16 +10,16 @@ import attrs
 from springpoise import units
 from springpoise.errors import InputError, InputTypeError
 from springpoise.feedforward import Actuator
-from springpoise.guard.build_yield import BuildYield
+from springpoise.guard.builds.fields import check_tolerances
+from springpoise.guard.builds.tolerances import Tolerances
+from springpoise.guard.format.place import nearest
 from springpoise.guard.joints import JointRanges, joint_names
-from springpoise.guard.limits import JointLimit, Limit
-from springpoise.guard.methods import check_compare
-from springpoise.guard.openings import OpenSpring
-from springpoise.guard.place import nearest
-from springpoise.guard.requests import DesignRequest
+from springpoise.guard.limits.mechanism import JointLimit, Limit
+from springpoise.guard.limits.yields import BuildYield
 from springpoise.guard.service import Service
-from springpoise.guard.tolerance_fields import check_tolerances
-from springpoise.guard.tolerances import Tolerances
+from springpoise.guard.solving.methods import check_compare
+from springpoise.guard.solving.openings import OpenSpring
+from springpoise.guard.solving.requests import DesignRequest
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
 

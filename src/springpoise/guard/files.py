@@ -11,9 +11,9 @@ from typing import Any
 
 from springpoise.errors import SpringpoiseError
 from springpoise.guard.document import PoiseFile
-from springpoise.guard.place import Place
-from springpoise.guard.reading import document_of, tables_of
-from springpoise.guard.rendering import merged, rendered
+from springpoise.guard.format.place import Place
+from springpoise.guard.format.reading import document_of, tables_of
+from springpoise.guard.format.rendering import merged, rendered
 from springpoise.writing import write_whole
 
 __all__ = ["dump", "load", "read_bytes", "save", "text_of"]

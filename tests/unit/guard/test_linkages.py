@@ -11,7 +11,7 @@ import pytest
 from springpoise import Actuator, Body, Cable, Friction, Mechanism, Motor, Point, SpringMount, Straight, guard
 from springpoise.errors import InputError, PoiseFileError
 from springpoise.guard.files import read_text
-from springpoise.guard.place import Place
+from springpoise.guard.format.place import Place
 from springpoise.linkages import (
     Coupling,
     Dyad,

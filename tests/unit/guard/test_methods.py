@@ -28,7 +28,7 @@ from springpoise import (
 )
 from springpoise.balance import compare_methods
 from springpoise.errors import InputError, InputTypeError, PoiseFileError
-from springpoise.guard.methods import METHODS, method_of
+from springpoise.guard.solving.methods import METHODS, method_of
 from springpoise.springs import ScaledSpring
 
 ARM = """

@@ -127,7 +127,7 @@ class _ChunkScan:
         self.cut = math.inf
         """So small at the most have the worst residuals of the best parts become."""
         self.front: list[BestPart] = []
-        self.counted = dict.fromkeys(REASONS, 0)
+        self.counted: dict[str, int] = dict.fromkeys(REASONS, 0)
 
     def tally(self) -> Tally:
         """What is remembered."""

@@ -12,13 +12,13 @@ import numpy as np
 from springpoise import units
 from springpoise.errors import InputError
 from springpoise.guard.amounts import celsius
+from springpoise.guard.format.place import nearest
 from springpoise.guard.inside import Inside, single_springs
 from springpoise.guard.joints import Pose
-from springpoise.guard.limits import Limit
+from springpoise.guard.limits.mechanism import Limit
+from springpoise.guard.limits.verdict import Case, LimitVerdict, broken, judged
 from springpoise.guard.part_springs import PartSpring, plain
-from springpoise.guard.place import nearest
 from springpoise.guard.service import service_of
-from springpoise.guard.verdict import Case, LimitVerdict, broken, judged
 from springpoise.springs import (
     ZIMMERLI_PEENED,
     ZIMMERLI_UNPEENED,

@@ -7,8 +7,8 @@ from typing import Any
 import attrs
 
 from springpoise.errors import InputError
-from springpoise.guard.models import Family, Form
-from springpoise.guard.place import Place
+from springpoise.guard.format.models import Family, Form
+from springpoise.guard.format.place import Place
 from springpoise.linkages import (
     Dyad,
     FiveBar,

@@ -8,9 +8,9 @@ from typing import Any
 from springpoise import units
 from springpoise.errors import InputError, SpringpoiseError
 from springpoise.guard.amounts import written
+from springpoise.guard.format.models import Registry, read_model, write_model
+from springpoise.guard.format.place import Place
 from springpoise.guard.joints import joint_names
-from springpoise.guard.models import Registry, read_model, write_model
-from springpoise.guard.place import Place
 from springpoise.mechanism.travel import joint_units_of
 
 __all__ = ["each_or_all", "each_or_all_tables", "travel_of", "travel_tables"]

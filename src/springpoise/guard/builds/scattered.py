@@ -11,10 +11,10 @@ from numpy.typing import NDArray
 from springpoise import tolerance
 from springpoise.errors import InputError, SpringpoiseError
 from springpoise.guard.amounts import OfPeak
+from springpoise.guard.builds.fields import full_name
+from springpoise.guard.builds.tolerances import Adjustable, FieldSpread, Tolerances
 from springpoise.guard.joints import poses_over
-from springpoise.guard.limits import UNLOADED
-from springpoise.guard.tolerance_fields import full_name
-from springpoise.guard.tolerances import Adjustable, FieldSpread, Tolerances
+from springpoise.guard.limits.mechanism import UNLOADED
 from springpoise.mechanism import Mechanism
 
 __all__ = ["AdjustedBuilds", "Builds", "SpreadCost"]

@@ -9,7 +9,8 @@ import attrs
 
 from springpoise import units
 from springpoise.errors import InputError
-from springpoise.guard.models import Family, Form, Registry
+from springpoise.guard.format.models import Family, Form, Registry
+from springpoise.guard.format.place import Place
 from springpoise.guard.part_springs import (
     CompressionUse,
     ExtensionUse,
@@ -20,7 +21,6 @@ from springpoise.guard.part_springs import (
     plain,
     spring_of,
 )
-from springpoise.guard.place import Place
 from springpoise.springs import (
     NITROGEN,
     NITROGEN_VAN_DER_WAALS,

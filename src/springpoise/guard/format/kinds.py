@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
-from springpoise.guard.build_yield import BuildYield
-from springpoise.guard.limits import (
+from springpoise.guard.format.linkage_kinds import LINKAGES, MEMBERS
+from springpoise.guard.format.models import Family, Registry
+from springpoise.guard.format.spring_kinds import ANGULAR, SPRING_FAMILIES, SPRINGS
+from springpoise.guard.limits.mechanism import (
     BalanceAngles,
     HoldingTorque,
     Limit,
@@ -13,11 +15,9 @@ from springpoise.guard.limits import (
     StoredEnergy,
     Stretch,
 )
-from springpoise.guard.linkage_kinds import LINKAGES, MEMBERS
-from springpoise.guard.models import Family, Registry
-from springpoise.guard.part_limits import BucklingMargin, FatigueMargin, ServiceTemperature, YieldMargin
-from springpoise.guard.requests import DesignRequest, FitRequest, SineRequest, StockRequest
-from springpoise.guard.spring_kinds import ANGULAR, SPRING_FAMILIES, SPRINGS
+from springpoise.guard.limits.parts import BucklingMargin, FatigueMargin, ServiceTemperature, YieldMargin
+from springpoise.guard.limits.yields import BuildYield
+from springpoise.guard.solving.requests import DesignRequest, FitRequest, SineRequest, StockRequest
 from springpoise.linkages import Arm
 from springpoise.paths import Cable, JointTravel, Spool, Straight
 from springpoise.paths.protocol import Path

@@ -9,7 +9,7 @@ import attrs
 
 from springpoise import units
 from springpoise.errors import InputError, InputTypeError, UnitError
-from springpoise.guard.place import Place
+from springpoise.guard.format.place import Place
 
 __all__ = ["Width", "read_width", "read_widths", "width_of", "widths_of", "write_width", "write_widths"]
 

@@ -9,9 +9,9 @@ import attrs
 from springpoise import units
 from springpoise.errors import InputError
 from springpoise.guard.amounts import share_of, text_of_share
-from springpoise.guard.limits import Limit
-from springpoise.guard.verdict import Case, LimitVerdict, judged
-from springpoise.guard.widths import read_width
+from springpoise.guard.builds.widths import read_width
+from springpoise.guard.limits.mechanism import Limit
+from springpoise.guard.limits.verdict import Case, LimitVerdict, judged
 from springpoise.tables import number
 
 __all__ = ["BuildYield"]

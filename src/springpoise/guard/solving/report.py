@@ -10,7 +10,8 @@ from typing import TYPE_CHECKING, Any
 from springpoise.balance import Residual, StockCandidate
 from springpoise.guard.amounts import finite_or_none, shown
 from springpoise.guard.check import table_of
-from springpoise.guard.figures import (
+from springpoise.guard.safety import CAUTION
+from springpoise.guard.solving.figures import (
     At,
     HoldFigures,
     PlaceFigures,
@@ -19,13 +20,12 @@ from springpoise.guard.figures import (
     rests_alone,
     spring_figures,
 )
-from springpoise.guard.methods import standing
-from springpoise.guard.methods_report import methods_dict, methods_text
-from springpoise.guard.safety import CAUTION
+from springpoise.guard.solving.methods import standing
+from springpoise.guard.solving.methods_report import methods_dict, methods_text
 from springpoise.tables import facts, grid, number
 
 if TYPE_CHECKING:
-    from springpoise.guard.solve import Design
+    from springpoise.guard.solving.solve import Design
 
 __all__ = ["design_dict", "design_text"]
 

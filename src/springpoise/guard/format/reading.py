@@ -13,15 +13,15 @@ from springpoise.errors import InputError, SpringpoiseError
 from springpoise.feedforward import Actuator
 from springpoise.gravity import STANDARD_GRAVITY, local, seen_from_base
 from springpoise.guard.amounts import written
+from springpoise.guard.builds.tolerances import Tolerances
 from springpoise.guard.document import Payload, PoiseFile
-from springpoise.guard.joint_tables import each_or_all, each_or_all_tables, travel_of, travel_tables
-from springpoise.guard.kinds import ANGULAR_REGISTRY, DESIGNS, LIMITS, LINKAGE_TABLES, REGISTRY, SPRINGS
-from springpoise.guard.linkage_kinds import URDF
-from springpoise.guard.models import Family, fields_of, kind_of, read_kind, read_model, write_kind, write_model
-from springpoise.guard.openings import OPEN, ROOM, STAND_INS, OpenSpring
-from springpoise.guard.place import Place
+from springpoise.guard.format.joint_tables import each_or_all, each_or_all_tables, travel_of, travel_tables
+from springpoise.guard.format.kinds import ANGULAR_REGISTRY, DESIGNS, LIMITS, LINKAGE_TABLES, REGISTRY, SPRINGS
+from springpoise.guard.format.linkage_kinds import URDF
+from springpoise.guard.format.models import Family, fields_of, kind_of, read_kind, read_model, write_kind, write_model
+from springpoise.guard.format.place import Place
 from springpoise.guard.service import Service
-from springpoise.guard.tolerances import Tolerances
+from springpoise.guard.solving.openings import OPEN, ROOM, STAND_INS, OpenSpring
 from springpoise.mechanism import Friction, Mechanism, SpringMount
 from springpoise.paths import JointTravel
 

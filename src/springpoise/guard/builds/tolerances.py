@@ -10,8 +10,7 @@ import attrs
 from springpoise import units
 from springpoise.errors import InputError, InputTypeError
 from springpoise.guard.amounts import OfPeak, share_of, text_of_share, text_of_torque_or_share, torque_or_share
-from springpoise.guard.place import nearest
-from springpoise.guard.widths import (
+from springpoise.guard.builds.widths import (
     Width,
     read_width,
     read_widths,
@@ -20,6 +19,7 @@ from springpoise.guard.widths import (
     write_width,
     write_widths,
 )
+from springpoise.guard.format.place import nearest
 
 __all__ = ["Adjustable", "FieldSpread", "Tolerances"]
 

@@ -22,9 +22,9 @@ import numpy as np
 from springpoise import units
 from springpoise.errors import InputError, SpringpoiseError
 from springpoise.guard.amounts import written
-from springpoise.guard.couplings import COUPLINGS
-from springpoise.guard.field_units import FIELD_UNITS, OWNER_UNITS
-from springpoise.guard.place import Place, nearest
+from springpoise.guard.format.couplings import COUPLINGS
+from springpoise.guard.format.field_units import FIELD_UNITS, OWNER_UNITS
+from springpoise.guard.format.place import Place, nearest
 
 __all__ = [
     "Family",

@@ -10,8 +10,8 @@ from typing import Any
 import attrs
 
 from springpoise.guard.amounts import finite_or_none, json_suffix, percent, shown
-from springpoise.guard.builds import AdjustedBuilds, Builds, SpreadCost
-from springpoise.guard.tolerances import Tolerances
+from springpoise.guard.builds.scattered import AdjustedBuilds, Builds, SpreadCost
+from springpoise.guard.builds.tolerances import Tolerances
 from springpoise.tables import facts, grid, number
 from springpoise.tolerance import Scatter
 

@@ -11,8 +11,8 @@ from springpoise import units
 from springpoise.balance import MethodAssumptions, MethodComparison, Residual, compare_methods
 from springpoise.errors import InputError, InputTypeError
 from springpoise.guard.amounts import percent
-from springpoise.guard.place import Place, nearest
-from springpoise.guard.widths import read_width
+from springpoise.guard.builds.widths import read_width
+from springpoise.guard.format.place import Place, nearest
 from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.paths import Cable, JointTravel, Spool, Straight
 from springpoise.springs import (

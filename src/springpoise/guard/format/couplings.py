@@ -7,8 +7,8 @@ from typing import Any, NamedTuple
 
 from springpoise.errors import InputError, SpringpoiseError
 from springpoise.guard.amounts import written
-from springpoise.guard.field_units import joint_unit
-from springpoise.guard.place import Place
+from springpoise.guard.format.field_units import joint_unit
+from springpoise.guard.format.place import Place
 from springpoise.linkages import Coupling
 
 __all__ = ["COUPLINGS", "Codec"]

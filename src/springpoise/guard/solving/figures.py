@@ -12,9 +12,9 @@ from numpy.typing import NDArray
 from springpoise.feedforward import Actuator, Feedforward
 from springpoise.guard.amounts import JSON_SUFFIX, finite_or_none
 from springpoise.guard.document import PoiseFile
-from springpoise.guard.kinds import SPRINGS
-from springpoise.guard.limits import coordinate_unit
-from springpoise.guard.models import kind_of
+from springpoise.guard.format.kinds import SPRINGS
+from springpoise.guard.format.models import kind_of
+from springpoise.guard.limits.mechanism import coordinate_unit
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.paths import Drum

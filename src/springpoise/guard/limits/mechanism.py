@@ -15,10 +15,10 @@ from springpoise import units
 from springpoise.errors import InputError, InputTypeError, UnitError
 from springpoise.feedforward import Feedforward
 from springpoise.guard.amounts import OfPeak, percent, shown, text_of_torque_or_share, torque_or_share, written
+from springpoise.guard.format.models import leaves
+from springpoise.guard.format.place import Place, nearest
 from springpoise.guard.joints import JointRanges, force_unit, joint_names, over_of, text_of_over
-from springpoise.guard.models import leaves
-from springpoise.guard.place import Place, nearest
-from springpoise.guard.verdict import Case, LimitVerdict, broken, greatest, judged, least
+from springpoise.guard.limits.verdict import Case, LimitVerdict, broken, greatest, judged, least
 from springpoise.mechanism import SpringMount
 from springpoise.paths import JointTravel
 

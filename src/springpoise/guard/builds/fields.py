@@ -11,9 +11,9 @@ import attrs
 
 from springpoise import tolerance
 from springpoise.errors import InputError, SpringpoiseError, UnitError
-from springpoise.guard.requests import DesignRequest, SineRequest, StockRequest
-from springpoise.guard.tolerances import Tolerances
-from springpoise.guard.widths import Width
+from springpoise.guard.builds.tolerances import Tolerances
+from springpoise.guard.builds.widths import Width
+from springpoise.guard.solving.requests import DesignRequest, SineRequest, StockRequest
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.mechanism.travel import joint_units_of

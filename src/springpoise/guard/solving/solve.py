@@ -23,15 +23,15 @@ from springpoise.balance import (
 )
 from springpoise.errors import InputError, NoSolution, PoiseFileError, SpringpoiseError
 from springpoise.guard.amounts import OfPeak
-from springpoise.guard.builds import Builds
+from springpoise.guard.builds.fields import kept_fields
+from springpoise.guard.builds.scattered import Builds
+from springpoise.guard.builds.study import ToleranceStudy, study_of
 from springpoise.guard.check import CheckReport, builds_of, document_at, judge, keeps_all
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.files import read_bytes
-from springpoise.guard.methods import compared
-from springpoise.guard.openings import OpenSpring
-from springpoise.guard.requests import FitRequest, SineRequest, StockRequest
-from springpoise.guard.study import ToleranceStudy, study_of
-from springpoise.guard.tolerance_fields import kept_fields
+from springpoise.guard.solving.methods import compared
+from springpoise.guard.solving.openings import OpenSpring
+from springpoise.guard.solving.requests import FitRequest, SineRequest, StockRequest
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.paths import Cable
@@ -90,12 +90,12 @@ class Design:
 
     def to_dict(self) -> dict[str, Any]:
         """Ready for JSON: numbers in SI with the unit in the key, None for what is not finite."""
-        from springpoise.guard.report import design_dict
+        from springpoise.guard.solving.report import design_dict
 
         return design_dict(self)
 
     def __str__(self) -> str:
-        from springpoise.guard.report import design_text
+        from springpoise.guard.solving.report import design_text
 
         return design_text(self)
 

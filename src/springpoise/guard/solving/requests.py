@@ -13,7 +13,7 @@ from springpoise import units
 from springpoise.balance import PulleyRoute
 from springpoise.errors import InputError
 from springpoise.guard.amounts import OfPeak, text_of_torque_or_share, torque_or_share
-from springpoise.guard.methods import MethodsRequest
+from springpoise.guard.solving.methods import MethodsRequest
 
 __all__ = ["DesignRequest", "FitRequest", "SineRequest", "Steps", "StockRequest"]
 

@@ -8,7 +8,7 @@ from typing import Any
 import attrs
 
 from springpoise.errors import InputError
-from springpoise.guard.requests import DesignRequest, FitRequest
+from springpoise.guard.solving.requests import DesignRequest, FitRequest
 from springpoise.mechanism import SpringMount
 
 __all__ = ["OPEN", "ROOM", "STAND_INS", "OpenSpring"]

@@ -17,7 +17,7 @@ from springpoise.mechanism import Mechanism
 from springpoise.mechanism.travel import joint_units_of
 
 if TYPE_CHECKING:
-    from springpoise.guard.builds import Builds
+    from springpoise.guard.builds.scattered import Builds
 
 __all__ = ["Case", "LimitVerdict", "broken", "greatest", "judged", "least"]
 

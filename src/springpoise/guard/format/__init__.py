@@ -1,0 +1,1 @@
+"""The text of a mechanism file to objects and back."""

@@ -1,0 +1,1 @@
+"""Limits that a mechanism file states, judged."""

@@ -1,0 +1,1 @@
+"""What a file leaves open, found and reported."""
