@@ -113,6 +113,36 @@ def test_pulley_becomes_exact_as_its_radius_vanishes():
     assert spring.rate * A * B == pytest.approx(G, rel=1e-4)
 
 
+def test_of_pulleys_that_balance_alike_the_one_that_loads_the_pivot_least(everything):
+    """R = i m g - k (i a - b e^{iq}) falls with longer levers: by brute force over the corners of the box."""
+    mine = everything.row("pulley").figures
+    for radius in BOX["attach_radius"]:
+        for height in BOX["anchor_height"]:
+            corner = compare_methods(
+                RUBBING,
+                over=RUBBING.poses(61),
+                attach_radius=(radius,) * 2,
+                anchor_height=(height,) * 2,
+                methods="pulley",
+            ).row("pulley")
+            if corner.success and corner.figures.residual.worst_fraction < mine.residual.worst_fraction:
+                assert mine.pivot_load <= corner.figures.pivot_load * (1 + 1e-9)
+
+
+def test_a_spring_behind_a_pulley_has_room_there(everything):
+    """Half of its greatest length is stretch, and half a metre is assumed."""
+    mechanism = everything.row("pulley").mechanism
+    stretch = mechanism.spring_states(RUBBING.poses(61))[0].length
+    assert 2.0 * stretch.max() <= 0.5 * (1 + 1e-6)
+    short = compare_methods(
+        RUBBING, over=RUBBING.poses(31), methods="pulley", assumptions=MethodAssumptions(room_behind_pulley=0.1), **BOX
+    )
+    row = short.row("pulley").require()
+    assert 2.0 * row.mechanism.spring_states(RUBBING.poses(31))[0].length.max() <= 0.1 * (1 + 1e-6)
+    assert "up to 100.00 mm long with its coils" in row.sizes
+    assert row.figures.residual.worst > everything.row("pulley").figures.residual.worst
+
+
 def test_balanced_methods_take_equal_effort_up_and_down(everything):
     """Up takes the residual and the friction, down the friction less it: equal to twice the residual at most."""
     for row in everything.rows:
@@ -232,7 +262,9 @@ def test_assumed_properties_are_kept(everything):
 
 def test_temperature_of_a_gas_spring_and_of_steel(everything):
     """20 K about 293.15 K: steel -0.5 % of its load, nitrogen some 7 to 8 %, rubber 0.8·20/293.15."""
-    assert everything.row("pulley").figures.warmer == pytest.approx(0.005, abs=3e-4)
+    pulley = everything.row("pulley").figures
+    # Half a per cent of a cosine, less or more by what is left over in any case.
+    assert pulley.warmer == pytest.approx(0.005, abs=2.0 * pulley.residual.worst_fraction + 1e-6)
     assert 0.06 < everything.row("gas").figures.warmer < 0.09
     assert everything.row("rubber").figures.warmer == pytest.approx(0.8 * 20 / 293.15, abs=2e-3)
 

@@ -61,7 +61,7 @@ class MethodAssumptions:
     room_behind_pulley: float = attrs.field(default=0.5, converter=units.metre, validator=units.positive)
     """Length that a spring or tube may have behind its pulley [m]."""
     free_length_ratio: float = attrs.field(default=0.5, converter=units.number, validator=_ratio)
-    """Free length of an ordinary extension spring over its greatest length in use [1]."""
+    """Free length of an ordinary extension spring over its greatest length in use [1], behind a pulley too."""
     initial_tension_ratio: float = attrs.field(default=0.1, converter=units.number, validator=_share)
     """Its initial tension over its greatest load in use [1]; on a shaped spool none where its line would be hollow."""
     gas_progression: float = attrs.field(default=1.3, converter=units.number, validator=_above_one)

@@ -111,8 +111,8 @@ def compare_methods(
     Notes
     -----
     A counterweight and a spring of zero free length balance every angle; torsion, gas and
-    constant-force springs one or two. Where several geometries balance equally well, as they do behind
-    a pulley, the row is one of them. A torsion spring is wound by two turns at the most. The inertia is that of the counterweight, and of a straight
+    constant-force springs one or two. Many places behind a pulley balance to
+    within a thousandth; the row is the one that loads the pivot least. A torsion spring is wound by two turns at the most. The inertia is that of the counterweight, and of a straight
     spring or tube a third of its mass at the attachment; springs on the ground and at the pivot count
     as none. A counterweight's friction at the pivot is not counted unless the arm states it.
 

@@ -85,7 +85,14 @@ class Frame:
         """The arm with these springs."""
         return self.bare.with_springs(mounts)
 
-    def best(self, mount: Callable[..., SpringMount], ranges: Mapping[str, Range], fit: str, rules: Rules) -> Placement:
+    def size_of(self, found: Placement) -> float:
+        """What a placement leaves, over the peak gravity torque [1]."""
+        left = found.residual
+        return (left.worst if self.norm == "minimax" else left.rms) / self.peak
+
+    def best(
+        self, mount: Callable[..., SpringMount], ranges: Mapping[str, Range], fit: str, rules: Rules, *, starts: int = 6
+    ) -> Placement:
         """The best of a mount that is built from numbers in ranges; a range of no width is a number.
 
         Raises
@@ -95,15 +102,18 @@ class Frame:
         """
         fixed = {name: low for name, (low, high) in ranges.items() if not high > low}
         knobs = tuple(Knob(name, low, high) for name, (low, high) in ranges.items() if high > low)
-        found = placed(
-            lambda **values: self.with_mounts(mount(**{**fixed, **values})),
-            knobs,
-            rules,
-            over=self.q,
-            norm=self.norm,
-            fit=fit,
-            starts=6,
-        )
+        try:
+            found = placed(
+                lambda **values: self.with_mounts(mount(**{**fixed, **values})),
+                knobs,
+                rules,
+                over=self.q,
+                norm=self.norm,
+                fit=fit,
+                starts=starts,
+            )
+        except InputError as error:  # the bounds were checked, so that it is no place that can be built
+            raise CannotSize(f"no geometry between the bounds can be built at every pose: {error}") from error
         if not found.success:
             raise CannotSize(found.status)
         return attrs.evolve(found, values={**fixed, **found.values})

@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from typing import Any
 
 import attrs
 import numpy as np
 
-from springpoise.balance.methods.frame import Frame, Sized, unscaled
+from springpoise.balance.methods.frame import CannotSize, Frame, Sized, unscaled
 from springpoise.balance.placing.limits import LENGTH, Limit, Rules
+from springpoise.balance.placing.result import Placement
 from springpoise.carriers import Carrier, namespace
 from springpoise.mechanism import Mechanism, SpringMount
 from springpoise.paths import Cable, Disc, Path, Straight
@@ -25,6 +27,12 @@ REFERENCE_TUBE = 0.010
 
 DROP = 0.5
 """How far from its pulley a cable is tied [m]: only what it runs from there on counts."""
+
+LEVELS = 3
+"""How many attach radii and anchor heights between their bounds are tried behind a pulley."""
+
+ALIKE = 1e-3
+"""Residuals over the peak gravity torque that differ by less are alike: no pulley is placed so exactly [1]."""
 
 GAP = 1.1
 """Half the distance of two rollers, over their radius [1]."""
@@ -69,26 +77,56 @@ def _where(frame: Frame, values: Any, *, pulley: bool = False) -> str:
 def pulley(frame: Frame) -> Sized:
     """A spring whose own length is hidden behind a pulley: zero free length but for the pulley's radius."""
     reach = 2.0 * frame.given.pulley_radius
+    stretched = 1.0 - float(frame.given.free_length_ratio)  # stretch over length, at its greatest
+
+    def fits(mechanism: Mechanism, q: Carrier) -> Limit:
+        x = mechanism.springs[0].spring_length(mechanism.linkage, q)
+        room = float(frame.given.room_behind_pulley)
+        return Limit("length behind the pulley", "m", LENGTH, x / stretched, room, "at most")
 
     def mount(radius: Carrier, height: Carrier, skew: Carrier, aside: Carrier) -> SpringMount:
         return SpringMount(ZeroLengthSpring(1.0), _over_pulley(frame, height, aside, frame.attach(radius, skew)))
 
-    found = frame.best(
-        mount,
-        {
-            "radius": frame.attach_radius,
-            "height": frame.anchor_height,
-            "skew": frame.skew,
-            "aside": (-reach, reach),
-        },
-        "mount",
-        Rules(0.0, None, None),
+    found = _lightest(
+        frame, mount, {"skew": frame.skew, "aside": (-reach, reach)}, Rules(0.0, None, None, others=(fits,))
     )
     state = found.mechanism.spring_states(frame.q)[0]
     spring: Any = found.mechanism.springs[0].spring
-    stretch = f"stretched {millimetres(float(np.min(state.length)))} to {millimetres(float(np.max(state.length)))}"
+    longest = float(np.max(state.length))
+    stretch = (
+        f"stretched {millimetres(float(np.min(state.length)))} to {millimetres(longest)}, up to "
+        f"{millimetres(longest / stretched)} long with its coils"
+    )
     sizes = f"rate {number(spring.rate, 'N/m')}, {stretch}, {_where(frame, found.values, pulley=True)}"
     return Sized(found.mechanism, sizes, 0.0)
+
+
+def _lightest(
+    frame: Frame, mount: Callable[..., SpringMount], ranges: dict[str, tuple[float, float]], rules: Rules
+) -> Placement:
+    """Of places that balance alike, the one that loads the pivot least: behind a pulley there are many.
+
+    Raises
+    ------
+    CannotSize
+        No place keeps the requirements.
+    """
+    radii, heights = ({*np.linspace(*ends, LEVELS).tolist()} for ends in (frame.attach_radius, frame.anchor_height))
+    boxes = [(frame.attach_radius, frame.anchor_height)]
+    boxes += [((one, one), (other, other)) for one in sorted(radii) for other in sorted(heights)]
+    found, reason = [], None
+    for i, (radius, height) in enumerate(dict.fromkeys(boxes)):
+        try:
+            ends = {"radius": radius, "height": height, **ranges}
+            found.append(frame.best(mount, ends, "mount", rules, starts=3 if i else 6))
+        except CannotSize as error:
+            reason = reason or error
+    if not found:
+        assert reason is not None
+        raise reason
+    least = min(map(frame.size_of, found))
+    alike = [one for one in found if frame.size_of(one) <= least + ALIKE]
+    return min(alike, key=lambda one: float(np.max(one.mechanism.pivot_load(frame.q))))
 
 
 def straight(frame: Frame) -> Sized:
