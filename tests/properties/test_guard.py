@@ -217,6 +217,7 @@ def requests(payload: st.SearchStrategy[str | None]) -> st.SearchStrategy[guard.
                 st.builds(PulleyRoute, radius=positive, spring_end=pairs, turn=st.sampled_from(["cw", "ccw"]))
             ),
             anchor_angle=angles,
+            attach_skews=st.lists(st.floats(-3.0, 3.0), min_size=1, max_size=4),
             residual_limit=maybe(torques),
             resolution=positive,
             **shared,

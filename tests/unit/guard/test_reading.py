@@ -299,6 +299,9 @@ def test_requests_are_read_with_the_same_care(written: Write, table: str, messag
         ("counts = [1, 2]", "counts = [1, 0]", "design.counts: StockRequest.counts must be a whole number from 1 to 1000, got 0"),
         ("counts = [1, 2]", "counts = []", "design.counts: StockRequest.counts must be 1 to 100 whole numbers, got 0"),
         ("counts = [1, 2]", "counts = [1.5]", "design.counts[1]: must be a whole number, got 1.5"),
+        ("counts = [1, 2]", "attach_skews = []", "StockRequest.attach_skews must be 1 to 100 angles in rad, got 0"),
+        ("counts = [1, 2]", 'attach_skews = ["0 deg", "200 deg"]', "attach_skews must be between -pi and pi rad, got 3.49066; degrees?"),
+        ("counts = [1, 2]", 'attach_skews = ["5 mm"]', "attach_skews"),
         ("counts = [1, 2]", 'residual_limit = "0 N*m"', "design.residual_limit: torque must be > 0 N*m, got '0 N*m'"),
         ("counts = [1, 2]", 'pulley = { radius = "1 mm" }', "design.pulley: must have the key spring_end"),
         (

@@ -9,9 +9,11 @@ from collections.abc import Callable
 from pathlib import Path
 
 import attrs
+import numpy as np
 import pytest
 
 from springpoise import guard
+from springpoise.balance import search_stock
 from springpoise.errors import InputError, NoSolution, PoiseFileError
 
 Write = Callable[..., Path]
@@ -118,6 +120,34 @@ def test_from_stock(stock_file: Callable[..., Path]) -> None:
     assert found.chosen.attach_radius * found.chosen.anchor_height == pytest.approx(0.12 * 0.2, rel=1e-3)
     assert found.after is not None
     assert found.after.worst_fraction < 0.001
+
+
+def test_attachments_may_be_turned(stock_file: Callable[..., Path], tmp_path: Path) -> None:
+    plain = guard.design(stock_file())
+    turned = guard.design(stock_file(("counts", 'attach_skews = ["-8 deg", "0 deg", "8 deg"]\ncounts')))
+    assert turned.search is not None and plain.search is not None
+    assert turned.search.considered == 3 * plain.search.considered
+    assert turned.search.best.residual.worst <= plain.search.best.residual.worst
+    document = guard.load(stock_file())
+    given = document.design
+    assert isinstance(given, guard.StockRequest)
+    direct = search_stock(
+        document.mechanism,
+        tmp_path / "list.csv",
+        attach_radii=given.attach_radii.values,
+        anchor_heights=given.anchor_heights.values,
+        attach_skews=np.radians([-8.0, 0.0, 8.0]),
+        counts=given.counts,
+        keep=12,
+        refine=12,
+    )
+    assert [one.residual.worst for one in turned.search.candidates] == pytest.approx(
+        [one.residual.worst for one in direct.candidates]
+    )
+    angles = {row["attach_angle_rad"] for row in turned.to_dict()["ranking"]}
+    assert angles == {one.attach_angle for one in turned.search.candidates}
+    assert ("attach deg" in str(turned)) == (len(angles) > 1)
+    assert "attach deg" not in str(plain)
 
 
 def test_mounts_are_rounded_to_what_is_drilled(stock_file: Callable[..., Path]) -> None:

@@ -237,12 +237,15 @@ def _ranking(candidates: Iterable[StockCandidate], chosen: StockCandidate | None
     listed = list(candidates)
     others = [name for name in listed[0].others if "price" in name.lower() or "cost" in name.lower()][:1]
     heads = [name.replace(" [", " ").replace("]", "") for name in others]
-    header = ["part", "", "attach mm", "anchor mm", "worst N*m", "%", "slack mm", "stretch mm", "pivot N"]
+    turned = len({one.attach_angle for one in listed}) > 1
+    angle = ["attach deg"] if turned else []
+    header = ["part", "", "attach mm", *angle, "anchor mm", "worst N*m", "%", "slack mm", "stretch mm", "pivot N"]
     lines = [
         [
             f"{one.count} x {one.part}",
             "taken" if one is chosen else "",
             f"{1e3 * one.attach_radius:.1f}",
+            *([f"{math.degrees(one.attach_angle):.1f}"] if turned else []),
             f"{1e3 * one.anchor_height:.1f}",
             number(one.residual.worst, "1"),
             f"{100 * one.residual.worst_fraction:.2f}",
@@ -343,7 +346,9 @@ def _candidate_dict(one: StockCandidate, *, taken: bool) -> dict[str, Any]:
         "count": one.count,
         "taken": taken,
         "attach_radius_m": one.attach_radius,
+        "attach_angle_rad": one.attach_angle,
         "anchor_height_m": one.anchor_height,
+        "anchor_angle_rad": one.anchor_angle,
         "residual": _residual_dict(one.residual),
         "slack_margin_m": finite_or_none(one.slack_margin),
         "stretch_margin_m": finite_or_none(one.stretch_margin),

@@ -22,6 +22,7 @@ MOST_STEPS = 400
 
 MOST_POSES = 10_000
 MOST_SPRINGS = 1000
+MOST_SKEWS = 100
 
 
 def _whole(value: Any, name: str, highest: int, lowest: int = 1) -> int:
@@ -47,6 +48,17 @@ def _counts(value: Any) -> tuple[int, ...]:
     if not counts or len(counts) > 100:
         raise InputError(f"StockRequest.counts must be 1 to 100 whole numbers, got {len(counts)}")
     return counts
+
+
+def _skews(value: Any) -> tuple[float, ...]:
+    listed = (value,) if isinstance(value, int | float | str) else tuple(value)
+    skews = tuple(units.radian(item, "StockRequest.attach_skews") for item in listed)
+    if not skews or len(skews) > MOST_SKEWS:
+        raise InputError(f"StockRequest.attach_skews must be 1 to {MOST_SKEWS} angles in rad, got {len(skews)}")
+    out = [skew for skew in skews if not abs(skew) <= math.pi]
+    if out:
+        raise InputError(f"StockRequest.attach_skews must be between -pi and pi rad, got {out[0]:g}; degrees?")
+    return skews
 
 
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)
@@ -121,6 +133,8 @@ class StockRequest(DesignRequest):
     """The pulley that springs hide behind; None for springs straight from anchor to arm."""
     anchor_angle: float = attrs.field(default=math.pi / 2, converter=units.radian)
     """Direction from pivot to anchor [rad]; by default straight up."""
+    attach_skews: tuple[float, ...] = attrs.field(default=(0.0,), converter=_skews, metadata={"unit": "rad"})
+    """Angles to try by which the attachment is turned from where a zero free length would want it [rad]."""
     residual_limit: float | OfPeak | None = attrs.field(
         default=None, converter=attrs.converters.optional(torque_or_share), metadata={"write": text_of_torque_or_share}
     )

@@ -169,6 +169,7 @@ def _from_stock(given: PoiseFile, request: StockRequest, loaded: Mechanism, befo
         over=loaded.poses(request.poses),
         pulley=request.pulley,
         anchor_angles=request.anchor_angle,
+        attach_skews=request.attach_skews,
         least_margin=request.least_margin,
         residual_limit=limit.share * before.peak_gravity_torque if isinstance(limit, OfPeak) else limit,
         keep=LISTED,
