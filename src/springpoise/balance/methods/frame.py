@@ -91,9 +91,15 @@ class Frame:
         return (left.worst if self.norm == "minimax" else left.rms) / self.peak
 
     def best(
-        self, mount: Callable[..., SpringMount], ranges: Mapping[str, Range], fit: str, rules: Rules, *, starts: int = 6
+        self,
+        mount: Callable[..., SpringMount],
+        ranges: Mapping[str, Range],
+        fit: str,
+        rules: Rules,
+        *,
+        quick: bool = False,
     ) -> Placement:
-        """The best of a mount that is built from numbers in ranges; a range of no width is a number.
+        """The best of a mount that is built from numbers in ranges; a range of no width is a number. ``quick``: nearly.
 
         Raises
         ------
@@ -110,7 +116,8 @@ class Frame:
                 over=self.q,
                 norm=self.norm,
                 fit=fit,
-                starts=starts,
+                starts=2 if quick else 6,
+                polished=0 if quick else 2,
             )
         except InputError as error:  # the bounds were checked, so that it is no place that can be built
             raise CannotSize(f"no geometry between the bounds can be built at every pose: {error}") from error

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import math
 from collections.abc import Callable
 from typing import Any
@@ -111,22 +112,22 @@ def _lightest(
     CannotSize
         No place keeps the requirements.
     """
-    radii, heights = ({*np.linspace(*ends, LEVELS).tolist()} for ends in (frame.attach_radius, frame.anchor_height))
-    boxes = [(frame.attach_radius, frame.anchor_height)]
-    boxes += [((one, one), (other, other)) for one in sorted(radii) for other in sorted(heights)]
-    found, reason = [], None
-    for i, (radius, height) in enumerate(dict.fromkeys(boxes)):
-        try:
-            ends = {"radius": radius, "height": height, **ranges}
-            found.append(frame.best(mount, ends, "mount", rules, starts=3 if i else 6))
-        except CannotSize as error:
-            reason = reason or error
+
+    def at(box: tuple[tuple[float, float], tuple[float, float]], *, quick: bool) -> Placement:
+        radius, height = box
+        return frame.best(mount, {"radius": radius, "height": height, **ranges}, "mount", rules, quick=quick)
+
+    whole = frame.attach_radius, frame.anchor_height
+    radii, heights = (sorted({*np.linspace(*ends, LEVELS).tolist()}) for ends in whole)
+    found: dict[Any, Placement] = {}
+    for box in (whole, *(((one, one), (other, other)) for one in radii for other in heights)):
+        with contextlib.suppress(CannotSize):
+            found[box] = at(box, quick=True)
     if not found:
-        assert reason is not None
-        raise reason
-    least = min(map(frame.size_of, found))
-    alike = [one for one in found if frame.size_of(one) <= least + ALIKE]
-    return min(alike, key=lambda one: float(np.max(one.mechanism.pivot_load(frame.q))))
+        return at(whole, quick=False)
+    least = min(map(frame.size_of, found.values()))
+    alike = [box for box, one in found.items() if frame.size_of(one) <= least + ALIKE]
+    return at(min(alike, key=lambda box: float(np.max(found[box].mechanism.pivot_load(frame.q)))), quick=False)
 
 
 def straight(frame: Frame) -> Sized:

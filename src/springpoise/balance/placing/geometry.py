@@ -187,8 +187,9 @@ def placed(
     seed: int = 0,
     executor: Executor | None = None,
     gravity: Any = None,
+    polished: int = POLISHED,
 ) -> Placement:
-    """``place`` for checked arguments."""
+    """``place`` for checked arguments; ``polished`` of the best ends are refined to the last digits."""
     middle = {knob.name: 0.5 * (knob.low + knob.high) for knob in knobs}
     first = built(build, middle, None, gravity)
     _check_bodies(first, rules, middle)
@@ -206,7 +207,7 @@ def placed(
         begin = chosen_starts(problem, starts, seed)
         ends = _each(executor, run_start, [(problem, start, False) for start in begin])
         ends.sort(key=lambda end: end.merit)
-        ends[:POLISHED] = _each(executor, run_start, [(problem, end.unknowns, True) for end in ends[:POLISHED]])
+        ends[:polished] = _each(executor, run_start, [(problem, end.unknowns, True) for end in ends[:polished]])
     else:
         ends = _each(executor, Plain.run_start, [(plain, start) for start in plain.chosen_starts(starts, seed)])
     ends.sort(key=lambda end: end.merit)
