@@ -116,6 +116,8 @@ def test_a_cable_that_winds_on_the_line_gives_the_same_moment_radii(layout):
     arm, spring, options = layout
     spool = shape_spool(arm, spring, cable_diameter=0.002, **options)
     assume(spool.success)
+    # A line that reaches out past its roller is refused by the path class, whose steps do not settle there.
+    assume(np.max(np.hypot(*spool.pitch_line.T)) < 0.5)
     assert spool.roll_out_error < 1e-9
     low, high = options["over"]
     inside = (low + 1e-3, high - 1e-3)
