@@ -22,6 +22,7 @@ from springpoise.tolerance.recorded import (
     poses_of,
     size_of,
     torque_program,
+    torque_units,
     torques_of,
 )
 from springpoise.tolerance.scatter_result import Scatter, limits_of
@@ -179,7 +180,7 @@ def scatter(
     asked = _levels(levels)
     drawn = nominal(mechanism, q, gravity)
     size = size_of(mechanism, q, gravity)
-    wanted = None if limit is None else limits_of(limit, size)
+    wanted = None if limit is None else limits_of(limit, size, torque_units(mechanism))
     names = resolved.names
     program = torque_program(mechanism, len(names), lambda v: dict(zip(names, v, strict=True)), gravity)
     poses = columns_of(q)

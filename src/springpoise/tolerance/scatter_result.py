@@ -190,10 +190,10 @@ class Scatter:
         return f"<Scatter of {self.builds} builds: {self.status}>"
 
 
-def limits_of(limit: Any, size: Array, torque_units: Sequence[str] | None = None) -> Array:
+def limits_of(limit: Any, size: Array, torque_units: Sequence[str]) -> Array:
     """Limits of the joints, shape (joints,); a percentage is one of the peak gravity torque ``size``.
 
-    ``torque_units`` are the units of the joints' torques, ``"N*m"`` or ``"N"``; None for N·m.
+    ``torque_units`` are the units of the joints' torques, ``"N*m"`` or ``"N"``.
 
     Raises
     ------
@@ -205,7 +205,7 @@ def limits_of(limit: Any, size: Array, torque_units: Sequence[str] | None = None
     if len(limits) != size.size:
         raise InputError(f"limit must be one for each of {size.size} joints, got {len(limits)}")
     found = []
-    for one, peak, unit in zip(limits, size, torque_units or ("N*m",) * size.size, strict=True):
+    for one, peak, unit in zip(limits, size, torque_units, strict=True):
         percent = PERCENT.fullmatch(one) if isinstance(one, str) else None
         value = units.scalar_si(one, unit, "limit") if percent is None else float(peak) * float(percent[1]) / 100
         if not isinstance(value, float) or not value >= 0.0:

@@ -11,6 +11,7 @@ import pytest
 from springpoise import Arm, Body, Mechanism, balance
 from springpoise.balance import Stock, progress
 from springpoise.balance.progress import steps
+from springpoise.balance.stock import mounts
 
 
 class Terminal:
@@ -43,7 +44,8 @@ def bars(monkeypatch):
     return made
 
 
-def test_a_callback_hears_every_step_and_the_total():
+def test_a_callback_hears_every_step_and_the_total(monkeypatch):
+    monkeypatch.setattr(mounts, "CANDIDATES", 12)  # one height a chunk
     told = []
     stock = Stock(parts=["a", "b"], rate=[1e3, 2e3], free_length=[0.05, 0.05], initial_tension=[0, 0], longest=[1, 1])
     found = balance.search_stock(

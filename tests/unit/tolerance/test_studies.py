@@ -289,3 +289,15 @@ def test_what_slides_is_told_in_newtons():
     for result in (sensitivities(lift), found, corners(lift, spreads), adjusters(lift, spreads, builds=200)):
         assert " N " in str(result)
         assert "N*m" not in str(result)
+
+
+def test_a_limit_of_a_sliding_joint_is_a_force():
+    """A mass m on an upright slide needs m·g: with m uniform within 10 %, three quarters lie below m·g·1.05."""
+    lift = PlanarChain([Link("carriage", Body(2.0, (0, 0)), joint="prismatic", skew="90 deg")])
+    mech = Mechanism(lift, travel=("0 mm", "300 mm"))
+    spreads = {"linkage.chain[0].bodies[0].mass": Spread.uniform("10 %")}
+    limit = 2.0 * 9.80665 * 1.05
+    found = scatter(mech, spreads, builds=20_000, limit=f"{limit} N")
+    assert found.yield_within() == pytest.approx(0.75, abs=0.012)
+    with pytest.raises(UnitError, match=r"limit must be a value in N, got '5 N\*m'"):
+        scatter(mech, spreads, builds=10, limit="5 N*m")
