@@ -16,12 +16,11 @@ from springpoise.errors import InputTypeError
 
 __all__ = ["Job", "check_executor", "run"]
 
-TASKS, LONGEST, AHEAD = 24, 16, 256
-"""Tasks that a run is cut into, so that workers finish together; more where one had more chunks than the second.
+TASKS, WORKERS = 3, 8
+"""Tasks for each worker, so that they finish together, and how many workers there are where an executor does not say."""
 
-A task that has begun is not interrupted, so that it must not be long. The third is how many are
-handed in ahead of their results.
-"""
+LONGEST, AHEAD = 16, 256
+"""Chunks of a task at the most, since one that has begun is not interrupted; tasks that are handed in ahead."""
 
 _Part = TypeVar("_Part")
 
@@ -73,7 +72,8 @@ def run(
         Something that is no executor.
     """
     check_executor(executor)
-    tasks = max(min(chunks, TASKS), -(-chunks // LONGEST))
+    workers = getattr(executor, "_max_workers", WORKERS)  # the pools of the standard library have it
+    tasks = max(min(chunks, TASKS * workers), -(-chunks // LONGEST))
     bounds = list(pairwise(chunks * task // tasks for task in range(tasks + 1)))
     parts: list[_Part] = []
 
