@@ -177,7 +177,7 @@ def test_what_a_search_sends_is_small_and_holds_no_names_or_prices():
     here = Here()
     _search(here)
     assert len(set(here.sent)) == 1
-    assert len(here.sent) == executors.TASKS
+    assert len(here.sent) == executors.TASKS * executors.WORKERS
     assert len(here.sent[0]) < 40_000
     assert b"p149" not in here.sent[0]
     assert b"shelf" not in here.sent[0]
