@@ -139,16 +139,19 @@ def _every_candidate(arm, stock, radii, heights, counts, pulley, limit, angles, 
     pulley=pulleys,
     share=st.sampled_from([math.inf, 0.3, 0.05]),
     directions=directions,
+    chunk=st.sampled_from([1, 5, 2_000_000]),
 )
-def test_search_equals_brute_force(arm, stock, radii, heights, counts, pulley, share, directions):
+def test_search_equals_brute_force(arm, stock, radii, heights, counts, pulley, share, directions, chunk):
     limit = share * 9.80665 * math.hypot(*arm.moment)
     if pulley is None:  # a straight spring turned as a whole leaves the same torque: equal up to rounding
         directions = directions[0][:1], directions[1]
-    found = balance.search_stock(
-        Mechanism(arm, travel=TRAVEL), stock, attach_radii=radii, anchor_heights=heights, counts=counts, over=Q,
-        anchor_angles=directions[0], attach_skews=directions[1],
-        pulley=pulley, residual_limit=None if math.isinf(limit) else limit, refine=0, keep=100,
-    )  # fmt: skip
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(mounts, "CANDIDATES", chunk)
+        found = balance.search_stock(
+            Mechanism(arm, travel=TRAVEL), stock, attach_radii=radii, anchor_heights=heights, counts=counts, over=Q,
+            anchor_angles=directions[0], attach_skews=directions[1],
+            pulley=pulley, residual_limit=None if math.isinf(limit) else limit, refine=0, keep=100,
+        )  # fmt: skip
     tried = list(_every_candidate(arm, stock, radii, heights, counts, pulley, limit, *directions))
     assert found.considered == len(tried)
     assert found.rejected == Counter(one.reason for one in tried if one.reason)
@@ -290,19 +293,23 @@ def test_scaled_arms_and_stocks_have_scaled_answers(arm, stock, radii, heights, 
     share=st.sampled_from([math.inf, 0.5, 0.1]),
     margin=st.sampled_from([0.0, 0.01]),
     keep=st.integers(1, 6),
-    chunk=st.sampled_from([1, 500, 5000, 10**7]),
+    chunk=st.sampled_from([(1, 1), (500, 2048), (5000, 7), (10**7, 2048)]),
+    kinds=st.sampled_from([1, 3, 400]),
 )
-def test_a_long_list_against_the_formula_written_out(seed, parts, share, margin, keep, chunk):
-    """Law of cosines, all springs at all mounts at once; counts, ranks and rejections must agree."""
+def test_a_long_list_against_the_formula_written_out(seed, parts, share, margin, keep, chunk, kinds):
+    """Law of cosines, all springs at all mounts at once; counts, ranks and rejections must agree, of equal springs too."""
     random = np.random.default_rng(seed)
     rate, free = random.uniform(100, 4000, parts), random.uniform(0.02, 0.3, parts)
     longest, tension = free * random.uniform(1.3, 4, parts), rate * free * random.uniform(0, 0.9, parts)
+    kind = np.arange(parts) if kinds >= parts else random.integers(0, kinds, parts)
+    rate, free, longest, tension = rate[kind], free[kind], longest[kind], tension[kind]
     stock = Stock(parts=map(str, range(parts)), rate=rate, free_length=free, initial_tension=tension, longest=longest)
     radii, heights, skews = np.linspace(0.04, 0.2, 5), np.linspace(0.06, 0.3, 4), np.array([-0.2, 0.1])
     weight = 2.0 * 9.80665 * 0.35
     limit = share * weight
     with pytest.MonkeyPatch.context() as patch:
-        patch.setattr(mounts, "CANDIDATES", chunk)
+        patch.setattr(mounts, "CANDIDATES", chunk[0])
+        patch.setattr(mounts, "MOUNTS", chunk[1])
         found = balance.search_stock(
             Arm(Body(2.0, (0.35, 0.0))), stock, attach_radii=radii, anchor_heights=heights, attach_skews=skews, over=Q,
             residual_limit=None if math.isinf(limit) else limit, least_margin=margin, keep=keep, refine=0,

@@ -8,7 +8,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from springpoise import Arm, Body, Mechanism, balance
+from springpoise import Arm, Body, Cable, Disc, ExtensionSpring, Mechanism, Point, SpringMount, balance
 from springpoise.balance import PulleyRoute, Stock
 from springpoise.errors import InputError, InputTypeError, NoSolution, PoiseFileError
 
@@ -55,6 +55,19 @@ PULLEY = PulleyRoute(radius="10 mm", spring_end=("-20 mm", "-400 mm"))
 def test_wrong_values(change, message):
     with pytest.raises(InputError, match=message):
         balance.search_stock(ARM, STOCK, **{**GRID, **change})
+
+
+def test_an_arm_whose_own_spring_gives_no_torque_at_some_pose():
+    inside = Cable(
+        Point("ground", (-0.1, -0.2)), Disc(Point("ground", (0, 0.1)), radius=0.05, turn="cw"), Point("arm", (0.1, 0))
+    )
+    arm = Mechanism(
+        ARM.linkage, springs=SpringMount(ExtensionSpring(500, free_length=0.05), inside), travel=(-1.5, 1.5)
+    )
+    with pytest.raises(
+        InputError, match=r"arm must have a holding torque at every pose, got none at [\d.]+ deg; is an"
+    ):
+        balance.search_stock(arm, STOCK, **GRID)
 
 
 def test_wrong_kinds():
@@ -179,6 +192,41 @@ def test_the_mount_bears_the_part_s_name():
     assert found.mechanism.springs[-1].name == found.best.part
 
 
+@pytest.mark.parametrize("resolution", ["5 mm", "20 mm"])
+@pytest.mark.parametrize("end", [(-0.2, -0.3), (0.0, -0.45), (0.2, -0.3)])
+def test_a_refined_mount_is_never_rounded_into_the_pulley(resolution, end):
+    pulley = PulleyRoute(radius="30 mm", spring_end=end, turn="ccw")
+    found = balance.search_stock(
+        ARM, STOCK, attach_radii=np.linspace(0.03, 0.2, 9), anchor_heights=np.linspace(0.05, 0.25, 9),
+        pulley=pulley, resolution=resolution, refine=6,
+    )  # fmt: skip
+    assert "attachment inside the pulley" in found.rejected
+    for one in found.candidates:
+        length = one.mechanism.spring_states(ARM.poses(181))[0].length
+        assert np.all(np.isfinite(length))
+        assert one.slack_margin > 0 and one.stretch_margin >= 0
+
+
+def test_a_box_without_a_multiple_of_the_resolution_is_refined_to_its_edges():
+    radii, heights = [0.0501, 0.0504, 0.0508], [0.1501, 0.1504, 0.1508]
+    found = balance.search_stock(ARM, STOCK, attach_radii=radii, anchor_heights=heights, resolution="5 mm")
+    assert found.success
+    for one in found.candidates:
+        assert one.attach_radius in radii
+        assert one.anchor_height in heights
+
+
+def test_many_mounts_of_few_springs_are_cut_too():
+    told = []
+    found = balance.search_stock(
+        ARM, STOCK, attach_radii=np.linspace(0.04, 0.1, 60), anchor_heights=np.linspace(0.1, 0.3, 60), over=[0.0, 0.4],
+        refine=0, progress=lambda done, total: told.append(done),
+    )  # fmt: skip
+    assert found.considered == 60 * 60 * 2 * 2
+    assert len(told) > 1
+    assert told[-1] == found.considered
+
+
 def test_nothing_can_be_reached():
     pulley = PulleyRoute(radius=0.15, spring_end=(0.4, -0.4), turn="ccw")
     found = balance.search_stock(ARM, STOCK, attach_radii=0.2, anchor_heights=0.2, pulley=pulley)
@@ -195,7 +243,9 @@ def test_options():
     assert found.best.count == 2
     assert found.best.mechanism.gravity == (0.0, -5.0)
     assert found.best.residual == balance.residual(found.best.mechanism)
-    one = balance.search_stock(ARM, STOCK, attach_radii="80 mm", anchor_heights="150 mm", counts=np.int64(1))
+    one = balance.search_stock(
+        ARM, STOCK, attach_radii="80 mm", anchor_heights="150 mm", counts=np.int64(1), keep=np.int64(2)
+    )
     assert {c.count for c in one.candidates} == {1}
     assert not any(c.refined for c in one.candidates)
 

@@ -16,7 +16,7 @@ from springpoise.errors import NoSolution
 from springpoise.mechanism import Mechanism
 from springpoise.tables import degrees, facts, grid, millimetres, number
 
-__all__ = ["StockCandidate", "StockSearch", "candidate", "keeps_margin", "pareto_front"]
+__all__ = ["StockCandidate", "StockSearch", "candidate", "pareto_front"]
 
 
 @attrs.frozen
@@ -81,12 +81,12 @@ class StockSearch:
     pareto: tuple[StockCandidate, ...]
     """Those that no other one beats in worst residual, number of springs and pivot load at once.
 
-    Taken from the candidates above and from the best part of each mount and count.
+    Taken from the candidates above and from the best part of each mount and count; of equals one.
     """
     considered: int
-    """How many candidates were tried."""
+    """How many candidates were tried: every part in every count at every mount of the grid, each value once."""
     rejected: Mapping[str, int]
-    """How many were rejected, by reason; each for its first reason."""
+    """How many candidates of the grid were rejected, by reason; each for its first reason, before any is refined."""
     nearest_miss: StockCandidate | None
     """Where nothing fits, the candidate that lacks least; None where something fits."""
     residual_limit: float | None
@@ -208,7 +208,7 @@ _Item = TypeVar("_Item")
 
 
 def pareto_front(items: Iterable[_Item], objectives: Callable[[_Item], tuple[float, int, float]]) -> list[_Item]:
-    """Those that no other beats in all three objectives, each of which is better when smaller.
+    """Those that no other beats in all three objectives, each of which is better when smaller; of equals the first.
 
     The first objective increases along the front.
     """
@@ -220,8 +220,3 @@ def pareto_front(items: Iterable[_Item], objectives: Callable[[_Item], tuple[flo
             front.append(item)
             reached.append((second, third))
     return front
-
-
-def keeps_margin(one: StockCandidate, margin: float) -> bool:
-    """Whether a candidate's spring keeps this distance from both ends of its lengths, and pulls throughout."""
-    return one.slack_margin > 0 and one.slack_margin >= margin and one.stretch_margin >= margin

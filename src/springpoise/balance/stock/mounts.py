@@ -18,8 +18,8 @@ Array = NDArray[np.float64]
 LARGEST_ROW = 128
 """Mounts of a row at the most; their geometry is worked out together."""
 
-CANDIDATES = 2_000_000
-"""Candidates of a chunk, about: it takes a tenth of a second or so."""
+CANDIDATES, MOUNTS = 2_000_000, 2048
+"""Candidates of a chunk, about, and mounts: whichever there are more of, it takes a fraction of a second."""
 
 
 class Mount(NamedTuple):
@@ -62,8 +62,9 @@ class Mounts:
     @classmethod
     def for_springs(cls, routings: tuple[Routing, ...], heights: Array, radii: Array, springs: int) -> Mounts:
         """Rows and chunks as long as suits the number of springs that are tried at each mount."""
-        row = int(np.clip(CANDIDATES // springs, 1, min(LARGEST_ROW, radii.size)))
-        return cls(routings, heights, radii, row, max(1, CANDIDATES // (springs * row)))
+        some = min(CANDIDATES // springs, MOUNTS)
+        row = int(np.clip(some, 1, min(LARGEST_ROW, radii.size)))
+        return cls(routings, heights, radii, row, max(1, some // row))
 
     def __len__(self) -> int:
         return len(self.routings) * self.heights.size * self.radii.size

@@ -5,13 +5,13 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Sequence
 from functools import cached_property
-from typing import Any, NamedTuple
+from typing import NamedTuple
 
 import attrs
 import numpy as np
 from numpy.typing import NDArray
 
-from springpoise.balance.stock.candidates import StockCandidate, candidate, keeps_margin
+from springpoise.balance.stock.candidates import StockCandidate, candidate
 from springpoise.balance.stock.lists import Stock
 from springpoise.balance.stock.route import Routing
 from springpoise.carriers import Carrier
@@ -26,6 +26,12 @@ ITERATIONS = 200
 
 RESTARTS, WORTHWHILE = 4, 0.01
 """At the most so many searches, each from where the last one ended, while one gains so much relatively."""
+
+FAR = 1e6
+"""The worst residual where springs do not fit, over that without them [1]: more than any spring leaves."""
+
+DIGITS = 12
+"""Lengths are rounded to so many digits behind the point [m], so that a multiple of a step reads as one."""
 
 ANCHOR_ANGLE = 2
 """Its place in a box."""
@@ -80,18 +86,29 @@ class Refiner:
         """The routing in other directions."""
         return attrs.evolve(self.routing, anchor_angle=anchor_angle, attach_skew=attach_skew)
 
+    @cached_property
+    def outside(self) -> float:
+        """More than any spring leaves [N·m]: what ``worst`` begins with where springs do not fit."""
+        return FAR * float(np.max(np.abs(self.base)))
+
     def worst(self, start: StockCandidate, place: Sequence[float]) -> float:
-        """Worst residual of the start's springs at a place in the box; very large where they do not fit."""
-        spring: Any = start.mechanism.springs[-1].spring
+        """Worst residual of the start's springs at a place in the box [N·m].
+
+        Where they do not fit, or the cable does not get there, it is ``outside`` or more: the more they lack, the more.
+        """
+        spring = self.stock.spring(start.index)
         _, height, anchor_angle, attach_skew = place
-        pull, lever = (np.broadcast_to(one, self.base.shape) for one in self.geometry(*place, self.routing.poses))
-        shift = float(spring.effective_free_length) if self.routing.pulley is not None else 0.0
-        length = pull + shift
+        with np.errstate(all="ignore"):
+            found = self.geometry(*place, self.routing.poses)
+        pull, lever = (np.broadcast_to(one, self.base.shape) for one in found)
+        if not (np.all(np.isfinite(pull)) and np.all(np.isfinite(lever))):
+            return 2.0 * self.outside
+        length = pull if self.routing.pulley is None else pull + float(spring.effective_free_length)
         low, high = spring.working_range
         room = self.turned(anchor_angle, attach_skew).room(height)
-        out = max(low + self.margin - length.min(), length.max() - min(high - self.margin, room), 0.0)
-        if not np.all(np.isfinite(length)) or out > 0:
-            return 1e6 * (1.0 + (out if math.isfinite(out) else 1.0))
+        lack = max(low + self.margin - length.min(), length.max() - min(high - self.margin, room))
+        if lack > 0.0:
+            return self.outside * (1.0 + float(lack))
         return float(np.max(np.abs(self.base + start.count * spring.load(length) * lever)))
 
 
@@ -140,8 +157,10 @@ def refined(refiner: Refiner, start: StockCandidate, routing: Routing) -> StockC
     there = refiner.turned(anchor_angle, attach_skew)
     best = start
     for drilled in _roundings((radius, height), (box.radius, box.height), step):
+        if refiner.worst(start, [*drilled, anchor_angle, attach_skew]) >= refiner.outside:
+            continue  # rounded, it does not fit, or ends inside the pulley
         one = candidate(there, refiner.stock, start.index, start.count, *drilled)
-        if keeps_margin(one, refiner.margin) and _has_room(there, one) and one.residual.worst < best.residual.worst:
+        if _keeps_margin(one, refiner.margin) and one.residual.worst < best.residual.worst:
             best = attrs.evolve(one, refined=True)
     return best
 
@@ -158,16 +177,15 @@ def _simplex(place: Array, bounds: Array) -> Array:
 def _roundings(
     place: tuple[float, float], box: tuple[tuple[float, float], tuple[float, float]], step: float
 ) -> list[tuple[float, float]]:
-    """The four multiples of the step around a place, kept in the box."""
+    """The four multiples of the step around a place, as far as they lie in the box; else the box's own edges."""
     choices = []
     for value, (low, high) in zip(place, box, strict=True):
-        around = {round(math.floor(value / step) * step, 9), round(math.ceil(value / step) * step, 9)}
-        inside = [x for x in around if low - 1e-12 <= x <= high + 1e-12]
-        choices.append(sorted(inside) or [value])
+        around = {round(whole(value / step) * step, DIGITS) for whole in (math.floor, math.ceil)}
+        inside = {x for x in around if low - 1e-12 <= x <= high + 1e-12}
+        choices.append(sorted(inside or {low, high}))
     return [(radius, height) for radius in choices[0] for height in choices[1]]
 
 
-def _has_room(routing: Routing, there: StockCandidate) -> bool:
-    """Whether the spring ends before its pulley at every pose."""
-    spring = there.mechanism.springs[-1].spring
-    return float(spring.working_range[1]) - there.stretch_margin <= routing.room(there.anchor_height)  # type: ignore[attr-defined]
+def _keeps_margin(one: StockCandidate, margin: float) -> bool:
+    """Whether a candidate's spring keeps this distance from both ends of its lengths, and pulls throughout."""
+    return one.slack_margin > 0 and one.slack_margin >= margin and one.stretch_margin >= margin

@@ -71,8 +71,15 @@ class Tally:
 class Scan:
     """Every spring of a list, in every count, at every mount; ``run`` of ``executors`` does the job.
 
-    At each mount the springs that can follow it are found by their lengths alone; of these, bounds
-    from a few poses say for which the worst residual over all poses has to be known.
+    At each mount the springs that can follow it are found by their lengths alone. Of these, a lower
+    bound of the worst residual, that at a few of the poses, says which have to be computed at all
+    poses; the others cannot matter to what is remembered:
+
+    - the best parts with their best mounts: a candidate whose bound is above its part's worst
+      residual at an earlier mount, or above those of the best parts so far, is among neither;
+    - the best part of the mount in each count: with a limit, all whose bound keeps it are computed;
+      without one, all whose bound is not above what the part of the least bound really leaves;
+    - how many exceed the limit: those whose bound does, and of the others those that really do.
     """
 
     mounts: Mounts
@@ -173,13 +180,13 @@ class _ChunkScan:
         bound = self.poses.bounds(pull, lever, rate, offset)
         groups = [slice(i * fits.size, (i + 1) * fits.size) for i in range(columns.counts.size)]
 
-        # One that may become the best mount of its part, and is among the best parts.
+        # It may be its part's best mount so far, and its part among the best.
         matters = bound <= np.minimum(self.worst[candidates], self.cut) * (1.0 + ROUNDING)
         over = bound > limit * (1.0 + ROUNDING)
-        if math.isfinite(limit):  # whether it keeps the limit
+        if math.isfinite(limit):  # it may keep the limit
             self.counted[OVER_LIMIT] += int(np.count_nonzero(over))
             matters |= ~over
-        else:  # which is the best of this mount
+        else:  # it may be the best of this mount
             for group in groups:
                 one = group.start + int(np.argmin(bound[group]))
                 reached = worst_residuals(base, pull, lever, rate[one : one + 1], offset[one : one + 1])[0]
@@ -202,7 +209,7 @@ class _ChunkScan:
         better = worst < self.worst[candidates]
         chosen = candidates[better]
         self.worst[chosen], self.mount[chosen] = worst[better], mount
-        if worst.min() < self.cut:
+        if np.any(self.worst[chosen] < self.cut):
             self.cut = least(self.worst, self.scan.most)
 
     def _best_parts(self, row: Row, geometry: Geometry, best: list[_Best]) -> list[BestPart]:

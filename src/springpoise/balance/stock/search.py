@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from springpoise import units
 from springpoise.balance.progress import Progress, steps
-from springpoise.balance.residuals import poses_over
+from springpoise.balance.residuals import poses_over, shown_pose
 from springpoise.balance.sine import as_mechanism
 from springpoise.balance.stock.candidates import StockCandidate, StockSearch, candidate, pareto_front
 from springpoise.balance.stock.columns import columns
@@ -23,7 +23,7 @@ from springpoise.balance.stock.misses import Misses
 from springpoise.balance.stock.mounts import Mounts
 from springpoise.balance.stock.refine import Box, Refiner, refined
 from springpoise.balance.stock.route import PulleyRoute, Routing
-from springpoise.balance.stock.scan import Scan
+from springpoise.balance.stock.scan import Scan, Tally
 from springpoise.errors import InputError, InputTypeError
 from springpoise.executors import check_executor, run
 from springpoise.linkages import Arm
@@ -57,10 +57,10 @@ def search_stock(
 ) -> StockSearch:
     """Try every spring of a stock list at every mount of a grid, in every count.
 
-    The worst residual over the poses is exact for each candidate that is listed. A candidate is
-    rejected where its spring goes slack or is stretched beyond its longest length in some pose, or
-    does not fit in front of the pulley. The best few are then refined between the grid's least and
-    greatest values, and rounded to what can be drilled.
+    What is listed, and how many are rejected, is the same as if every candidate were computed at
+    every pose. A candidate is rejected where its spring goes slack or is stretched beyond its longest
+    length at some pose, or does not fit in front of the pulley. The best few are then refined between
+    the grid's least and greatest values, and rounded to what can be drilled.
 
     Parameters
     ----------
@@ -93,7 +93,8 @@ def search_stock(
     refine
         How many of the best are refined; 0 for none.
     resolution
-        Steps to which refined radii and heights are rounded [m].
+        Steps to which refined radii and heights are rounded [m], > 0. Where no multiple of it lies between
+        the grid's least and greatest value, it is one of these. Angles are not rounded.
     gravity
         Gravity (gx, gy) [m/s²]; None for the mechanism's own.
     executor
@@ -117,8 +118,12 @@ def search_stock(
     Notes
     -----
     Each mount costs its geometry, once over the poses. Of the list only those springs are looked at
-    whose lengths suit the mount's least and greatest, found in the sorted list; and of these only
-    those are computed at all poses that five poses do not rule out. So time grows with the number of
+    whose lengths suit the mount's least and greatest, found in the sorted list. What such a spring
+    leaves at five of the poses is a lower bound of its worst residual. It is computed at all poses
+    unless the bound is above the limit, or without a limit above the least worst residual at this mount,
+    and above its own at an earlier mount or those of as many parts as are kept or refined: then it
+    belongs neither in the ranking nor on the Pareto front. Bounds are passed by a thousand millionth
+    before they count, so that rounding rules nothing out. So time grows with the number of
     mounts, and with the number of springs that the mounts can take rather than that of the list.
     """
     mechanism = as_mechanism(arm)
@@ -126,6 +131,8 @@ def search_stock(
         mechanism = attrs.evolve(mechanism, gravity=gravity)
     if not isinstance(stock, Stock | str | FilePath):
         raise InputTypeError(f"stock must be a Stock or the path of its CSV file, got {stock!r}")
+    if pulley is not None and not isinstance(pulley, PulleyRoute):
+        raise InputTypeError(f"pulley must be a PulleyRoute or None, got {pulley!r}")
     check_executor(executor)
     listed = stock if isinstance(stock, Stock) else read_stock(stock)
     radii = _lengths(attach_radii, "attach_radii")
@@ -135,14 +142,8 @@ def search_stock(
     numbers = _counts(counts)
     limit = math.inf if residual_limit is None else _positive(residual_limit, "N*m", "residual_limit")
     step = _positive(resolution, "m", "resolution")
-    margin = units.metre(least_margin, "least_margin")
-    if not isinstance(margin, float) or not margin >= 0:
-        raise InputError(f"least_margin must be >= 0 m, got {margin}")
-    for name, value in (("keep", keep), ("refine", refine)):
-        if isinstance(value, bool) or not isinstance(value, int) or value < (name == "keep"):
-            raise InputError(f"{name} must be a whole number >= {int(name == 'keep')}, got {value!r}")
-    if pulley is not None and not isinstance(pulley, PulleyRoute):
-        raise InputTypeError(f"pulley must be a PulleyRoute or None, got {pulley!r}")
+    margin = _margin(least_margin)
+    listing, refining = _whole(keep, "keep", 1), _whole(refine, "refine", 0)
     poses = poses_over(mechanism, over)
     base, weight_angle = _to_balance(mechanism, poses)
     springs = columns(listed, numbers, margin, straight=pulley is None)
@@ -152,47 +153,57 @@ def search_stock(
         radii,
         springs.candidates,
     )
-    most = max(keep, refine)
     right, up = (np.broadcast_to(part, poses.shape) for part in mechanism.pivot_force(poses))
-    scan = Scan(mounts, springs, base, (right, up), limit, most)
+    scan = Scan(mounts, springs, base, (right, up), limit, max(listing, refining))
     considered = len(mounts) * springs.candidates
     with steps(progress, considered, "springs tried") as report:
         tally = run(
             scan, mounts.chunks, executor, lambda chunks: report(mounts.before_chunk(chunks) * springs.candidates)
         )
-
-    def taken(number: int, mount: int) -> StockCandidate:
-        at = mounts[mount]
-        return candidate(at.routing, listed, *springs.part_and_count(number), at.radius, at.height)
-
-    best = np.lexsort((tally.candidate, tally.worst))[:most]
-    rank = [taken(int(tally.candidate[one]), int(tally.mount[one])) for one in best]
     box = Box(*((float(values.min()), float(values.max())) for values in (radii, heights, angles, skews)))
-    refiner = Refiner(mounts[0].routing, listed, box, step, margin)
-    better = [
-        refined(refiner, found, mounts[int(tally.mount[one])].routing)
-        for one, found in zip(best[:refine], rank, strict=False)
-    ]
-    # Refining comes first: what it brings below the limit fits.
-    rank = sorted([*better, *rank[len(better) :]], key=_merit)
-    ranked = tuple([one for one in rank if one.residual.worst <= limit][:keep])
-    miss = None
-    if not ranked and rank:
-        lacks = f"its worst residual is {rank[0].residual.worst - limit:.4g} N*m above the limit"
-        miss = attrs.evolve(rank[0], lacks=lacks)
-    elif not ranked:
-        nearest = run(Misses(mounts, springs), mounts.chunks, executor)
-        if nearest.reason:
-            lacks = f"{nearest.reason}, by {1e3 * nearest.short:.3g} mm"
-            miss = attrs.evolve(taken(nearest.part, nearest.mount), lacks=lacks)
+    ranked = _refined_ranking(scan, tally, listed, Refiner(mounts[0].routing, listed, box, step, margin), refining)
+    fits = [one for one in ranked if one.residual.worst <= limit][:listing]
+    fronts = (_taken(scan, listed, one.candidate, one.mount) for one in tally.front)
     return StockSearch(
-        candidates=ranked,
-        pareto=tuple(pareto_front([*ranked, *(taken(one.candidate, one.mount) for one in tally.front)], _merit)),
+        candidates=tuple(fits),
+        pareto=tuple(pareto_front([*fits, *(one for one in fronts if one.residual.worst <= limit)], _merit)),
         considered=considered,
         rejected={reason: number for reason, number in tally.counted.items() if number},
-        nearest_miss=miss,
+        nearest_miss=None if fits else _nearest_miss(scan, listed, ranked, executor),
         residual_limit=None if residual_limit is None else limit,
     )
+
+
+def _taken(scan: Scan, listed: Stock, number: int, mount: int) -> StockCandidate:
+    """A candidate by its number and its mount's, with all that is to be known about it."""
+    at = scan.mounts[mount]
+    return candidate(at.routing, listed, *scan.columns.part_and_count(number), at.radius, at.height)
+
+
+def _refined_ranking(scan: Scan, tally: Tally, listed: Stock, refiner: Refiner, refine: int) -> list[StockCandidate]:
+    """The best parts and counts, so many of them refined, the best first, whether they keep the limit or not."""
+    best = np.lexsort((tally.candidate, tally.worst))[: scan.most]
+    found = []
+    for rank, (number, mount) in enumerate(
+        zip(tally.candidate[best].tolist(), tally.mount[best].tolist(), strict=True)
+    ):
+        one = _taken(scan, listed, number, mount)
+        found.append(refined(refiner, one, scan.mounts[mount].routing) if rank < refine else one)
+    return sorted(found, key=_merit)
+
+
+def _nearest_miss(
+    scan: Scan, listed: Stock, ranked: list[StockCandidate], executor: Executor | None
+) -> StockCandidate | None:
+    """Where nothing fits, what lacks least: in the residual, or else in the lengths of springs."""
+    if ranked:
+        lacks = f"its worst residual is {ranked[0].residual.worst - scan.limit:.4g} N*m above the limit"
+        return attrs.evolve(ranked[0], lacks=lacks)
+    nearest = run(Misses(scan.mounts, scan.columns), scan.mounts.chunks, executor)
+    if not nearest.reason:
+        return None
+    lacks = f"{nearest.reason}, by {1e3 * nearest.short:.3g} mm"
+    return attrs.evolve(_taken(scan, listed, nearest.part, nearest.mount), lacks=lacks)
 
 
 def _merit(one: StockCandidate) -> tuple[float, int, float]:
@@ -202,6 +213,11 @@ def _merit(one: StockCandidate) -> tuple[float, int, float]:
 def _to_balance(mechanism: Mechanism, poses: Array) -> tuple[Array, float]:
     """The torque that is to be balanced; and the angle from a balancing spring's anchor to its attachment at q = 0."""
     torque = np.broadcast_to(mechanism.holding_torque(poses), poses.shape)
+    if not np.all(np.isfinite(torque)):
+        at = shown_pose(poses[~np.isfinite(torque)][0])
+        raise InputError(
+            f"arm must have a holding torque at every pose, got none at {at}; is an end of a cable inside a disc there?"
+        )
     arm = mechanism.linkage
     assert isinstance(arm, Arm)
     gx, gy = mechanism.gravity
@@ -241,6 +257,19 @@ def _counts(counts: Any) -> tuple[int, ...]:
     if not items:
         raise InputError("counts must be at least one whole number >= 1, got none")
     return tuple(sorted({int(item) for item in items}))
+
+
+def _whole(value: Any, name: str, least: int) -> int:
+    if isinstance(value, bool) or not isinstance(value, int | np.integer) or value < least:
+        raise InputError(f"{name} must be a whole number >= {least}, got {value!r}")
+    return int(value)
+
+
+def _margin(value: ScalarLike) -> float:
+    margin = units.metre(value, "least_margin")
+    if not isinstance(margin, float) or not margin >= 0:
+        raise InputError(f"least_margin must be >= 0 m, got {margin}")
+    return margin
 
 
 def _positive(value: ScalarLike, unit: str, name: str) -> float:
