@@ -2,19 +2,33 @@
 
 from __future__ import annotations
 
+import itertools
 import json
 import math
 import re
 from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 import attrs
 import numpy as np
 import pytest
 
-from springpoise import guard
+from springpoise import (
+    Arm,
+    Body,
+    Cable,
+    Disc,
+    ExtensionSpring,
+    Mechanism,
+    Point,
+    SpringMount,
+    Straight,
+    guard,
+)
 from springpoise.balance import search_stock
 from springpoise.errors import InputError, NoSolution, PoiseFileError
+from springpoise.guard.solving.drilling import lack
 
 Write = Callable[..., Path]
 STOCK = """\
@@ -157,6 +171,92 @@ def test_mounts_are_rounded_to_what_is_drilled(stock_file: Callable[..., Path]) 
     for point in (path.first, path.last):  # type: ignore[attr-defined]
         for x in point.at:
             assert 1e3 * x == pytest.approx(round(1e3 * x), abs=1e-9)
+
+
+ONE_TURNED_MOUNT = (
+    ('from = "100 mm", to = "140 mm", steps = 5', 'from = "120 mm", to = "120 mm", steps = 1'),
+    ('from = "180 mm", to = "220 mm", steps = 5', 'from = "200 mm", to = "200 mm", steps = 1'),
+    ("[1, 2]", '[2]\nattach_skews = ["8 deg"]'),
+)
+"""The attachment is at (118.8, 16.7) mm."""
+
+
+def greatest_length(attach: tuple[float, float]) -> float:
+    """From an anchor 200 mm above the pivot, over the lift's travel."""
+    turned = complex(*attach) * np.exp(1j * np.radians(np.linspace(-60, 75, 181)))
+    return float(np.max(np.abs(turned - 0.2j)))
+
+
+def test_what_the_search_keeps_is_kept_when_mounts_are_rounded(stock_file: Callable[..., Path], tmp_path: Path) -> None:
+    """The nearest hole would overstretch the spring, and so would the next; the third does not."""
+    exact = 0.12 * np.exp(1j * np.radians(8))
+    holes = sorted(itertools.product((0.11, 0.12), (0.01, 0.02)), key=lambda at: abs(complex(*at) - exact))
+    longest = 0.3038
+    assert greatest_length((exact.real, exact.imag)) < longest
+    assert [greatest_length(hole) <= longest for hole in holes] == [False, False, True, True]
+    (tmp_path / "list.csv").write_text(f"{STOCK.splitlines()[0]}\nB-1,0.245,60,14.7,{1e3 * longest},3.10\n", "utf-8")
+    found = guard.design(stock_file(*ONE_TURNED_MOUNT, ("counts", 'resolution = "10 mm"\ncounts')))
+    assert found.solved is not None
+    assert found.status.startswith("2 x B-1, rank 1 of 1")
+    assert found.solved.mechanism.springs[0].path.last.at == pytest.approx(holes[2])  # type: ignore[attr-defined]
+
+
+def test_where_no_rounded_mount_keeps_what_is_asked(stock_file: Callable[..., Path]) -> None:
+    plain = guard.design(stock_file(*ONE_TURNED_MOUNT)).search
+    assert plain is not None
+    limit = f'residual_limit = "{100.001 * plain.best.residual.worst_fraction:.5f} %"\nresolution = "400 mm"'
+    found = guard.design(stock_file(*ONE_TURNED_MOUNT, ("counts", f"{limit}\ncounts")))
+    assert found.search is not None
+    assert found.search.success
+    assert found.solved is None
+    assert not found.success
+    message = (
+        r"none of \d parts and counts fits with its mounts rounded to 400 mm; best is 2 x A-1: "
+        r"its worst residual is [\d.]+ N\*m above the limit"
+    )
+    assert re.fullmatch(message, found.status)
+    assert "Stock ranking" in str(found)
+    with pytest.raises(NoSolution, match=message):
+        found.require()
+
+
+HOOK = Point("arm", (0.1, 0))
+STRAIGHT = Straight(Point("ground", (0, 0.2)), HOOK)
+OVER_PULLEY = Cable(Point("ground", (-0.01, -0.2)), Disc(Point("ground", (-0.01, 0.2)), radius=0.01, turn="cw"), HOOK)
+INSIDE = Cable(Point("ground", (-0.01, -0.2)), Disc(Point("ground", (-0.01, 0.09)), radius=0.1, turn="cw"), HOOK)
+
+
+@pytest.mark.parametrize(
+    ("spring", "path", "rigid", "limit", "message"),
+    [
+        ({}, STRAIGHT, 0.0, math.inf, None),
+        ({}, STRAIGHT, 0.0, 0.1, r"its worst residual is [\d.]+ N\*m above the limit"),
+        (
+            {"free_length": 0.14},
+            STRAIGHT,
+            0.0,
+            math.inf,
+            r"its spring comes within -[\d.]+ mm of an end of its lengths",
+        ),
+        ({"longest": 0.29}, STRAIGHT, 0.0, math.inf, r"its spring comes within -[\d.]+ mm of an end of its lengths"),
+        ({"free_length": 0.101}, STRAIGHT, 0.0, math.inf, r"its spring comes within 5\.6 mm of an end of its lengths"),
+        ({"longest": 0.9}, OVER_PULLEY, 0.4, math.inf, None),
+        ({"longest": 0.9}, OVER_PULLEY, 0.3, math.inf, "its spring does not fit in front of the pulley"),
+        ({}, INSIDE, 0.0, math.inf, "its cable does not reach the arm at every pose"),
+    ],
+)
+def test_what_a_rounded_mount_lacks(
+    spring: dict[str, float], path: Any, rigid: float, limit: float, message: str | None
+) -> None:
+    """The attachment 100 mm out, the anchor 200 mm up: lengths from 106.6 to 290.9 mm."""
+    one = ExtensionSpring(300, **{"free_length": 0.05, "longest": 0.4, **spring})
+    arm = Mechanism(
+        Arm(Body(3, (0.4, 0))), springs=SpringMount(one, path, rigid_length=rigid), travel=("-60 deg", "75 deg")
+    )
+    steps = guard.Steps(first=0.1, last=0.1, steps=1)
+    request = guard.StockRequest(stock="x", attach_radii=steps, anchor_heights=steps, least_margin="6 mm")
+    found = lack(arm, request, limit)
+    assert found == message if message is None else re.fullmatch(message, str(found))
 
 
 def test_the_payload_of_the_design_is_balanced_and_not_kept(stock_file: Callable[..., Path]) -> None:

@@ -142,7 +142,7 @@ class StockRequest(DesignRequest):
     least_margin: float = attrs.field(default=0.0, converter=units.metre, validator=units.not_negative)
     """Distance that every spring keeps from both ends of its lengths [m], >= 0."""
     resolution: float = attrs.field(default=1e-4, converter=units.metre, validator=units.positive)
-    """Steps to which refined mounts are rounded [m], > 0."""
+    """Steps to which coordinates and cable are rounded [m], > 0; a spring that then breaks limit or margin does not fit."""
 
 
 @attrs.frozen(kw_only=True, field_transformer=units.named_fields)

@@ -2,14 +2,14 @@
 
 from __future__ import annotations
 
+import math
 import os
 from pathlib import Path
-from typing import Any
+from typing import Any, NamedTuple
 
 import attrs
 import numpy as np
 
-from springpoise import units
 from springpoise.balance import (
     MethodComparison,
     Residual,
@@ -29,12 +29,11 @@ from springpoise.guard.builds.study import ToleranceStudy, study_of
 from springpoise.guard.check import CheckReport, builds_of, document_at, judge, keeps_all
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.files import read_bytes
+from springpoise.guard.solving.drilling import drilled
 from springpoise.guard.solving.methods import compared
 from springpoise.guard.solving.openings import OpenSpring
 from springpoise.guard.solving.requests import FitRequest, SineRequest, StockRequest
-from springpoise.linkages import Point
-from springpoise.mechanism import Mechanism, SpringMount
-from springpoise.paths import Cable
+from springpoise.mechanism import Mechanism
 
 __all__ = ["Design", "design"]
 
@@ -62,7 +61,7 @@ class Design:
     search: StockSearch | None = None
     """The stock search, where it was one."""
     chosen: StockCandidate | None = None
-    """The candidate of the search that was taken: the first in rank that keeps all limits, else the first."""
+    """The candidate of the search that was taken: with its mounts rounded the first that keeps all limits, else that fits."""
     methods: MethodComparison | None = None
     """Ways of balancing side by side, where the design asks for them."""
     study: ToleranceStudy | None = None
@@ -160,6 +159,9 @@ def _from_stock(given: PoiseFile, request: StockRequest, loaded: Mechanism, befo
     list_file = (given.path.parent if given.path is not None else Path()) / request.stock
     read_bytes(list_file, LARGEST_STOCK)
     limit = request.residual_limit
+    if isinstance(limit, OfPeak):
+        limit = limit.share * before.peak_gravity_torque
+    most = math.inf if limit is None else limit
     search = search_stock(
         loaded,
         read_stock(list_file),
@@ -171,53 +173,56 @@ def _from_stock(given: PoiseFile, request: StockRequest, loaded: Mechanism, befo
         anchor_angles=request.anchor_angle,
         attach_skews=request.attach_skews,
         least_margin=request.least_margin,
-        residual_limit=limit.share * before.peak_gravity_torque if isinstance(limit, OfPeak) else limit,
+        residual_limit=limit,
         keep=LISTED,
         refine=LISTED,
         resolution=request.resolution,
         progress=progress,
     )
-    if not search.success:
-        return Design(
-            document=given, solved=None, before=before, after=None, report=None, search=search, status=search.status
+    taken = _first_that_keeps(search, request, given, most)
+    if taken is None:
+        status = search.status
+        if search.success:
+            one = search.best
+            status = (
+                f"none of {len(search.candidates)} parts and counts fits with its mounts rounded to "
+                f"{1e3 * request.resolution:g} mm; best is {one.count} x {one.part}: {drilled(one, request, most)[1]}"
+            )
+        return Design(document=given, solved=None, before=before, after=None, report=None, search=search, status=status)
+    status = f"{taken.candidate.count} x {taken.candidate.part}, rank {taken.rank}"
+    if taken.rank > 1 and taken.keeps:
+        status += (
+            ": the first that keeps all limits" if given.limits else ": the first that fits with its mounts rounded"
         )
-    tried = [(one, _with_mounts(given, _to_drill(one, request.resolution))) for one in search.candidates]
-    builds: list[Builds | None] = []
-    keeping = None
-    for rank, (_, solved) in enumerate(tried):
-        builds.append(builds_of(solved))
-        if keeps_all(solved, builds[-1]):
-            keeping = rank
-            break
-    chosen, solved = tried[keeping or 0]
-    status = f"{chosen.count} x {chosen.part}, rank 1 of {len(search.candidates)}"
-    if keeping:
-        status = f"{chosen.count} x {chosen.part}, rank {keeping + 1}: the first that keeps all limits"
-    elif keeping is None and given.limits:
-        status += "; none of them keeps all limits"
-    return _finished(given, solved, before, status, builds[keeping or 0], search=search, chosen=chosen)
+    else:
+        status += f" of {len(search.candidates)}" + ("" if taken.keeps else "; none of them keeps all limits")
+    return _finished(given, taken.solved, before, status, taken.builds, search=search, chosen=taken.candidate)
 
 
-def _to_drill(candidate: StockCandidate, step: float) -> list[SpringMount]:
-    """The candidate's mounts, the new one named, with coordinates and cable rounded to what can be made."""
-    *others, last = candidate.mechanism.springs
-    rigid = _stepped(last.rigid_length, step)
-    return [*others, attrs.evolve(last, name=candidate.part, path=_rounded(last.path, step), rigid_length=rigid)]
+class _Taken(NamedTuple):
+    """A candidate of a search with its mounts rounded."""
+
+    rank: int
+    candidate: StockCandidate
+    solved: PoiseFile
+    builds: Builds | None
+    keeps: bool
 
 
-def _rounded(part: Any, step: float) -> Any:
-    """A path, or a part of one, with every point on a multiple of the step."""
-    if isinstance(part, Point):
-        return attrs.evolve(part, at=(_stepped(part.at[0], step), _stepped(part.at[1], step)))
-    if isinstance(part, Cable):
-        return Cable(*(_rounded(element, step) for element in part.along))
-    names = [field.name for field in attrs.fields(type(part)) if isinstance(getattr(part, field.name), Point)]
-    return attrs.evolve(part, **{name: _rounded(getattr(part, name), step) for name in names})
-
-
-def _stepped(value: float, step: float) -> float:
-    """The nearest multiple of a step, as it reads when a person writes it in mm."""
-    return units.parse(f"{1e3 * round(value / step) * step + 0.0:.10g} mm", "m")
+def _first_that_keeps(search: StockSearch, request: StockRequest, given: PoiseFile, limit: float) -> _Taken | None:
+    """The first in rank that keeps all limits with its mounts rounded, else the first that fits so; None for none."""
+    first = None
+    for rank, one in enumerate(search.candidates, start=1):
+        mounts, lacks = drilled(one, request, limit)
+        if lacks:
+            continue
+        solved = _with_mounts(given, mounts)
+        builds = builds_of(solved)
+        taken = _Taken(rank, one, solved, builds, keeps_all(solved, builds))
+        if taken.keeps:
+            return taken
+        first = first or taken
+    return first
 
 
 def _by_sine(given: PoiseFile, request: SineRequest, loaded: Mechanism, before: Residual) -> Design:
