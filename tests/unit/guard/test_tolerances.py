@@ -263,6 +263,9 @@ at_least = "10 %"
     file.write_text(sliding.replace('"101 %"', '"5 N*m"'), encoding="utf-8")
     with pytest.raises(PoiseFileError, match="residual_limit must be a share of the peak gravity torque where a joint"):
         guard.load(file)
+    file.write_text(sliding, encoding="utf-8")
+    # a limit on the joint that slides is a force
+    assert re.search(r"builds within [\d.]+ N\*m, [\d.]+ N, ", guard.check(file).verdicts[0].sentence)
 
 
 # ------------------------------------------------------------------------------------------------
@@ -422,6 +425,11 @@ adjusters = [{ field = "springs[1].path.last.at[0]" }, { field = "springs[under]
     assert [one.field for one in kept.spreads] == ["springs[0].spring.rate", "springs[over].path.first.at[1]"]
     assert kept.spreads[0].shared is None
     assert [one.field for one in kept.adjusters or ()] == ["springs[0].path.last.at[0]"]
+    limit = '[[limits]]\nwhat = "yield"\nat_least = "50 %"\nadjuster = "springs[under].rigid_length"\n'
+    file.write_text(text + limit, encoding="utf-8")
+    message = r"design: without what is best left out \(under\) limits\[1\]\.adjuster must be .*, got 'springs\[under\]"
+    with pytest.raises(PoiseFileError, match=message):
+        guard.design(file)
     only = attrs.evolve(kept, spreads=[attrs.evolve(kept.spreads[0], field="springs[under].rate")])
     assert only.with_springs_kept({"springs[under].rate": None, "springs[0].path.last.at[0]": "x"}) is None
 

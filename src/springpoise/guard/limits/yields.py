@@ -59,7 +59,8 @@ class BuildYield(Limit):
                 raise InputError(f"adjuster must be one of the tolerances' adjusters, got {self.adjuster!r}")
             count, share, about = builds.adjusted_count, builds.adjusted(chosen).yield_share, chosen.label
             subject = f"{self.what} with {about} adjusted"
-        limits = ", ".join(number(limit, "N*m") for limit in builds.limits)
+        joints = zip(builds.limits, case.joints, strict=True)
+        limits = ", ".join(number(limit, "N*m" if unit == "rad" else "N") for limit, (_, unit) in joints)
         also = f" of {count} builds within {limits}"
         return judged(
             case,

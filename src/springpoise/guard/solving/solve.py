@@ -256,7 +256,12 @@ def _by_fit(given: PoiseFile, request: FitRequest, before: Residual) -> Design:
     tolerances = given.tolerances
     if tolerances is not None and len(kept) < len(names):
         tolerances = tolerances.with_springs_kept(kept_fields(tolerances, whole, kept))
-    solved = _with_mounts(attrs.evolve(given, tolerances=tolerances), found.mechanism.springs)
+    try:
+        solved = _with_mounts(attrs.evolve(given, tolerances=tolerances), found.mechanism.springs)
+    except InputError as error:
+        if not found.left_out:
+            raise
+        raise InputError(f"without what is best left out ({', '.join(found.left_out)}) {error}") from error
     return _finished(given, solved, before, found.status + left_out, builds_of(solved))
 
 
