@@ -214,6 +214,16 @@ def test_a_local_build_cannot_be_sent_to_processes():
         _place(build, executor=pool)
 
 
+def _build_with_a_fault(height):
+    """Cannot be recorded, and reaches for what is not there above the middle of the range."""
+    return _build(float(height) if float(height) < 0.11 else height.missing)
+
+
+def test_an_error_of_a_build_is_no_fault_of_the_sending():
+    with ProcessPoolExecutor(1) as pool, pytest.raises(AttributeError, match="missing"):
+        _place(_build_with_a_fault, executor=pool, knobs={"height": (0.08, 0.13)})
+
+
 def test_nothing_fits_is_a_result():
     found = _place(fit="rate", keep_in={Point("arm", (0.35, 0)): ((None, "100 mm"), (None, None))})
     assert not found.success

@@ -23,6 +23,7 @@ from springpoise.balance.placing.search import BAD, FEASIBLE, Ended, chosen_star
 from springpoise.balance.placing.shares import layout_of, nominal, sizable
 from springpoise.balance.residuals import poses_of_joints, residual_at
 from springpoise.errors import InputError, InputTypeError
+from springpoise.executors import check_executor
 from springpoise.linkages import Point
 from springpoise.mechanism import Mechanism
 from springpoise.mechanism.travel import joint_units_of
@@ -148,8 +149,7 @@ def place(
     for name, value, least in (("starts", starts, 1), ("seed", seed, 0)):
         if isinstance(value, bool) or not isinstance(value, int | np.integer) or value < least:
             raise InputError(f"{name} must be a whole number >= {least}, got {value!r}")
-    if executor is not None and (isinstance(executor, type) or not callable(getattr(executor, "submit", None))):
-        raise InputTypeError(f"executor must be an executor of concurrent.futures or None, got {executor!r}")
+    check_executor(executor)
     found = knobs_of(knobs)
     _check_arguments(build, found)
     rules = Rules(
@@ -283,12 +283,22 @@ def _each(executor: Executor | None, job: Callable[..., Ended], arguments: list[
     try:
         return [future.result() for future in futures]
     except (pickle.PicklingError, AttributeError) as error:
+        if _can_be_sent(arguments):  # then it is an error of the job itself
+            raise
         raise InputTypeError(
             f"build must be a function of a module for an executor of processes, got one that cannot be sent: {error}"
         ) from error
     finally:
         for future in futures:
             future.cancel()
+
+
+def _can_be_sent(arguments: list[tuple[Any, ...]]) -> bool:
+    try:
+        pickle.dumps(arguments)
+    except (pickle.PicklingError, AttributeError):
+        return False
+    return True
 
 
 def _check_arguments(build: Callable[..., Mechanism], knobs: tuple[Knob, ...]) -> None:
