@@ -18,8 +18,14 @@ BUILT = EXAMPLES / "greenhouse_lift_built.poise.toml"
 STOCK = EXAMPLES / "greenhouse_springs.csv"
 
 
-def test_the_built_file_is_what_the_design_finds() -> None:
-    found = guard.design(OPEN).require()
+@pytest.fixture(scope="module")
+def found() -> guard.Design:
+    """What the design of the open file finds, computed once."""
+    return guard.design(OPEN)
+
+
+def test_the_built_file_is_what_the_design_finds(found: guard.Design) -> None:
+    assert found.require() is found
     assert found.solved is not None
     assert found.after is not None
     assert found.after.worst_fraction < 0.01
@@ -62,9 +68,8 @@ def test_an_anchor_that_is_5_mm_off_breaks_a_limit(tmp_path: Path, old: str, new
     assert shift > 0.25
 
 
-def test_the_design_compares_the_methods() -> None:
+def test_the_design_compares_the_methods(found: guard.Design) -> None:
     """The same as a call of the solver itself on the arm with its payload."""
-    found = guard.design(OPEN)
     document = guard.load(OPEN)
     arm = document.with_payload("half a crate")
     assert document.design is not None
@@ -89,9 +94,8 @@ def test_the_design_compares_the_methods() -> None:
     assert f"The parts found leave {100 * found.after.worst_fraction:.2f} %." in text  # type: ignore[union-attr]
 
 
-def test_the_design_states_its_yield_and_the_adjuster_to_provide() -> None:
+def test_the_design_states_its_yield_and_the_adjuster_to_provide(found: guard.Design) -> None:
     """The same as calls of the solvers themselves on the mechanism as built."""
-    found = guard.design(OPEN)
     study, built = found.study, guard.load(BUILT)
     assert study is not None
     assert built.tolerances is not None
