@@ -173,6 +173,35 @@ def test_what_a_scatter_sends_is_small_and_holds_no_mechanism():
     assert not isinstance(pickle.loads(here.sent[0]), Mechanism)
 
 
+def test_tasks_are_handed_in_only_so_far_ahead_of_their_results(monkeypatch):
+    monkeypatch.setattr(executors, "AHEAD", 2)
+    here = Here()
+    _same_search(here)
+    assert len(here.sent) > 2
+
+    class Waiting(Executor):
+        """Begins a task when its result is asked for, and knows how many were handed in and not yet asked for."""
+
+        def __init__(self):
+            self.waiting, self.most = 0, 0
+
+        def submit(self, fn, /, *args, **kwargs):
+            self.waiting += 1
+            self.most = max(self.most, self.waiting)
+            future = Future()
+
+            def result(timeout=None):
+                self.waiting -= 1
+                return fn(*args, **kwargs)
+
+            future.result = result
+            return future
+
+    lazy = Waiting()
+    assert str(_search(lazy)) == str(_search(None))
+    assert (lazy.waiting, lazy.most) == (0, 2)
+
+
 def test_what_a_search_sends_is_small_and_holds_no_names_or_prices():
     here = Here()
     _search(here)

@@ -83,8 +83,10 @@ class Counts:
         )
 
     def quantiles(self, bins: Bins, levels: Sequence[float]) -> Array:
-        """Quantiles at each pose, shape (levels, p), from the least (level 0) to the greatest (level 1)."""
+        """Quantiles at each pose, shape (levels, p), from the least (level 0) to the greatest (level 1); NaN of none."""
         poses = bins.low.size
+        if not np.any(self.counts):
+            return np.full((len(levels), poses), np.nan)
         edges = bins.low[:, None] + bins.width[:, None] * np.arange(BINS + 1)
         edges[:, 0], edges[:, -1] = self.least, self.greatest
         edges = np.clip(edges, self.least[:, None], self.greatest[:, None])

@@ -44,7 +44,7 @@ class Scatter:
     levels: tuple[float, ...]
     """Levels of the bands [1]."""
     bands: Array
-    """Quantiles of the holding torque at each pose [N·m], shape (levels, poses), without builds that are NaN."""
+    """Quantiles of the holding torque at each pose [N·m], shape (levels, poses), of builds that can take every pose; NaN of none."""
     nominal: Array
     """Holding torque of the mechanism as drawn at each pose [N·m]."""
     peak_gravity_torque: Any

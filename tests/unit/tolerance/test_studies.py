@@ -166,6 +166,7 @@ def test_builds_that_cannot_take_every_pose():
         short, {"linkage.coupler.length": Spread.samples([0.245], in_order=True)}, builds=1, over=[np.pi, 0.0]
     )
     assert short.broken == 1
+    assert np.all(np.isnan(short.bands))
     with pytest.raises(InputError, match="worst_build must be of builds that can take every pose, got none"):
         _ = short.worst_build
     assert "worst build" not in str(short)

@@ -229,8 +229,6 @@ def _to_balance(mechanism: Mechanism, poses: Array) -> tuple[Array, float]:
 
 def _lengths(values: Any, name: str) -> Array:
     grid = np.atleast_1d(np.asarray(units.metre(values, name), dtype=np.float64)).ravel()
-    if grid.size == 0:
-        raise InputError(f"{name} must be at least one length in m, got none")
     if not np.all(grid > 0):
         raise InputError(f"{name} must be > 0 m, got {grid[~(grid > 0)][0]}")
     return np.unique(grid)
@@ -238,8 +236,6 @@ def _lengths(values: Any, name: str) -> Array:
 
 def _angles(values: Any, name: str, most: float) -> Array:
     grid = np.atleast_1d(np.asarray(units.radian(values, name), dtype=np.float64)).ravel()
-    if grid.size == 0:
-        raise InputError(f"{name} must be at least one angle in rad, got none")
     out = grid[~(np.abs(grid) <= most)]
     if out.size:
         raise InputError(f"{name} must be between -{most:.4g} and {most:.4g} rad, got {out[0]}; degrees?")
