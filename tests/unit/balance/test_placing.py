@@ -276,6 +276,23 @@ def test_knobs_at_a_bound_say_what_room_would_bring():
     assert "at its upper bound: 1 % of its range more would take about" in text
 
 
+def test_room_for_a_slide_brings_newtons():
+    """A weight W on a vertical slide of stroke s under an ideal spring h above: the best rate leaves W·s / (2·h - s).
+
+    With 2 kg, s = 0.1 m and h = 0.4 m that falls by 2·W·s / (2·h - s)² = 8.005 N for each metre of h.
+    """
+
+    def rising(height):
+        slide = PlanarChain([Link("slide", Body(2.0, (0, 0)), joint="prismatic", skew="90 deg")])
+        path = Straight(Point("ground", (0.0, height)), Point("slide", (0, 0)))
+        return Mechanism(slide, springs=SpringMount(ZeroLengthSpring(100), path), travel=(0, "100 mm"))
+
+    found = place(rising, knobs={"height": ("150 mm", "400 mm")}, fit="rate")
+    assert found.residual.worst == pytest.approx(2 * 9.80665 * 0.1 / 0.7, rel=1e-9)
+    assert found.knobs[0].gain == pytest.approx(2 * 2 * 9.80665 * 0.1 / 0.7**2, rel=1e-6)
+    assert "at its upper bound: 1 mm more would take about 0.0080 N off" in str(found)
+
+
 def test_springs_may_stay_as_they_are():
     """fit='none' searches geometry alone; rate · a · b = m · g · r then fixes the height."""
     spring = ZeroLengthSpring(858.081875)

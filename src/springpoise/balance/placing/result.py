@@ -36,7 +36,7 @@ class PlacedKnob:
     unit: str
     """SI unit where the bounds were given as text; empty where they were plain numbers."""
     gain: float | None
-    """How much smaller the norm would get for one unit of room beyond the bound [N·m per unit]; 0 inside, None for not known."""
+    """How much smaller the norm would get for one unit of room beyond the bound [N·m, or N, per unit]; 0 inside, None for not known."""
 
     @property
     def margin(self) -> float:
@@ -51,6 +51,10 @@ class PlacedKnob:
         return "lower" if self.value - self.low < self.high - self.value else "upper"
 
     def __str__(self) -> str:
+        return self._text("N*m")
+
+    def _text(self, norm_unit: str) -> str:
+        """The knob in words, ``norm_unit`` being that of the norm: ``"N*m"``, or ``"N"`` where joints slide."""
         value, low, high = (_quantity(v, self.unit or "1") for v in (self.value, self.low, self.high))
         text = f"{value} (from {low} to {high})"
         if self.at_bound is None:
@@ -61,7 +65,7 @@ class PlacedKnob:
         step, said = {"m": (1e-3, "1 mm"), "rad": (math.radians(1.0), "1 deg")}.get(
             self.unit, (0.01 * (self.high - self.low), "1 % of its range")
         )
-        return f"{text}: {said} more would take about {number(abs(self.gain) * step, 'N*m', 2)} off"
+        return f"{text}: {said} more would take about {number(abs(self.gain) * step, norm_unit, 2)} off"
 
 
 @attrs.frozen
@@ -87,7 +91,7 @@ class PlacedLimit:
     active: bool
     """Whether it is reached."""
     gain: float | None
-    """How much smaller the norm would get for one unit of room [N·m per unit]; 0 where it is not reached, None for not known."""
+    """How much smaller the norm would get for one unit of room [N·m, or N, per unit]; 0 where it is not reached, None for not known."""
 
     def __str__(self) -> str:
         value, allowed, margin = (_quantity(v, self.unit) for v in (self.value, self.allowed, self.margin))
@@ -180,7 +184,7 @@ class Placement:
         rows = [("status", self.status), ("residual", str(self.residual))]
         if len(self.joints) > 1:
             rows += [(f"  joint {one.name}", _of_joint(one)) for one in self.joints]
-        rows += [(one.name, str(one)) for one in self.knobs]
+        rows += [(one.name, one._text(self.residual.unit)) for one in self.knobs]
         for index, mount in enumerate(self.mechanism.springs):
             times = f"{mount.count} x " if mount.count > 1 else ""
             rows.append((self.mechanism.mount_name(index), times + _described(mount)))
