@@ -220,6 +220,20 @@ def test_where_no_rounded_mount_keeps_what_is_asked(stock_file: Callable[..., Pa
         found.require()
 
 
+def test_a_part_that_no_rounded_mount_holds_is_passed_over(stock_file: Callable[..., Path], tmp_path: Path) -> None:
+    """With holes every 400 mm the spring is 400 mm long at the least: too long for the first, however well it balances."""
+    (tmp_path / "list.csv").write_text(
+        STOCK.splitlines()[0] + "\nB-1,0.245,60,14.7,395,3.10\nB-2,0.245,60,14.5,450,3.30\n", encoding="utf-8"
+    )
+    file = stock_file(*ONE_TURNED_MOUNT, ("counts", 'resolution = "400 mm"\ncounts'))
+    text = file.read_text(encoding="utf-8")
+    file.write_text(re.sub(r"\[\[limits\]\].*(?=\[design\])", "", text, flags=re.DOTALL), encoding="utf-8")
+    found = guard.design(file)
+    assert found.search is not None
+    assert [one.part for one in found.search.candidates] == ["B-1", "B-2"]
+    assert found.status == "2 x B-2, rank 2: the first that fits with its mounts rounded"
+
+
 HOOK = Point("arm", (0.1, 0))
 STRAIGHT = Straight(Point("ground", (0, 0.2)), HOOK)
 OVER_PULLEY = Cable(Point("ground", (-0.01, -0.2)), Disc(Point("ground", (-0.01, 0.2)), radius=0.01, turn="cw"), HOOK)
