@@ -62,12 +62,11 @@ def compare_methods(
     """Balance one arm in every usual way, each as well as it can be between the same bounds.
 
     ``"pulley"``: a spring hidden behind a pulley, or behind two rollers where the arm swings to both
-    sides of the vertical, as one of zero free length. ``"straight"``: an
-    ordinary extension spring from point to point. ``"torsion"``: a torsion spring at the pivot with
-    its preload. ``"gas"``: a gas spring from below. ``"rubber"`` and ``"rubber pulley"``: a rubber
-    tube, straight and behind a pulley. ``"counterweight"``. ``"constant force"``: a spring of
-    constant force on a round drum. ``"spool"``: an ordinary spring on a spool shaped so that its
-    energy mirrors gravity's.
+    sides of the vertical, as one of zero free length. ``"straight"``: an ordinary extension spring
+    from point to point. ``"torsion"``: a torsion spring at the pivot with its preload. ``"gas"``: a
+    gas spring from below. ``"rubber"`` and ``"rubber pulley"``: a rubber tube, straight and behind a
+    pulley. ``"counterweight"``. ``"constant force"``: a spring of constant force on a round drum.
+    ``"spool"``: an ordinary spring on a spool shaped so that its energy mirrors gravity's.
 
     The springs are as strong as the arm needs, not parts of a catalogue: the table says what each
     way can do at its best. A method that cannot be sized is a row that says why.
@@ -111,10 +110,11 @@ def compare_methods(
     Notes
     -----
     A counterweight and a spring of zero free length balance every angle; torsion, gas and
-    constant-force springs one or two. Many places behind a pulley balance to
-    within a thousandth; the row is the one that loads the pivot least. A torsion spring is wound by two turns at the most. The inertia is that of the counterweight, and of a straight
-    spring or tube a third of its mass at the attachment; springs on the ground and at the pivot count
-    as none. A counterweight's friction at the pivot is not counted unless the arm states it.
+    constant-force springs one or two. Many places behind a pulley balance to within a thousandth;
+    the row is the one that loads the pivot least. A torsion spring is wound by two turns at the most.
+    The inertia is that of the counterweight, and of a straight spring or tube a third of its mass at
+    the attachment; springs on the ground and at the pivot count as none. A counterweight's friction
+    at the pivot is not counted unless the arm states it.
 
     Examples
     --------
