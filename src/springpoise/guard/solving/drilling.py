@@ -76,10 +76,10 @@ def lack(mechanism: Mechanism, request: StockRequest, limit: float) -> str | Non
 
 def _room(path: Any) -> float:
     """Length that a spring at a cable's first end may take before it meets the pulley [m]; infinite without one."""
-    disc = path.along[1] if isinstance(path, Cable) else None
-    if not isinstance(disc, Disc):
+    end, disc = path.along[:2] if isinstance(path, Cable) else (None, None)
+    if not isinstance(end, Point) or not isinstance(disc, Disc):
         return math.inf
-    away = math.dist(disc.centre.at, path.along[0].at)
+    away = math.dist(disc.centre.at, end.at)
     return math.sqrt(max(away**2 - disc.radius**2, 0.0))
 
 
