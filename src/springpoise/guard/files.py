@@ -9,7 +9,7 @@ import tomllib
 from pathlib import Path
 from typing import Any
 
-from springpoise.errors import SpringpoiseError
+from springpoise.errors import InputTypeError, SpringpoiseError
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.format.place import Place
 from springpoise.guard.format.reading import document_of, tables_of
@@ -43,6 +43,8 @@ def load(path: str | os.PathLike[str]) -> PoiseFile:
         The file cannot be read as it stands: missing, too large, not TOML, an unknown or missing
         key, a value out of range or without its unit. The message names the file, the path of
         keys (entries of lists counted from 1, such as ``springs[1].spring.rate``) and the value.
+    InputTypeError
+        ``path`` is no path.
 
     Examples
     --------
@@ -52,6 +54,8 @@ def load(path: str | os.PathLike[str]) -> PoiseFile:
         ...
     springpoise.errors.PoiseFileError: nowhere.poise.toml: cannot be read: No such file or directory
     """
+    if not isinstance(path, str | os.PathLike):
+        raise InputTypeError(f"path must be the path of a file, got {path!r}")
     file = Path(path)
     place = Place(str(path), folder=file.parent)
     raw = read_bytes(file, LARGEST_FILE)

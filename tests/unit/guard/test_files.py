@@ -14,7 +14,7 @@ import numpy as np
 import pytest
 
 from springpoise import Arm, Body, Mechanism, Point, SpringMount, Straight, ZeroLengthSpring, guard
-from springpoise.errors import InputError, PoiseFileError
+from springpoise.errors import InputError, InputTypeError, PoiseFileError
 from springpoise.springs import ScaledSpring
 
 Write = Callable[..., Path]
@@ -59,6 +59,8 @@ def test_a_folder_a_pipe_and_nothing(tmp_path: Path) -> None:
         guard.load(tmp_path / "gone.poise.toml")
     with pytest.raises(PoiseFileError, match="cannot be read: embedded null"):
         guard.load("a\0b")
+    with pytest.raises(InputTypeError, match="path must be the path of a file, got 3"):
+        guard.load(3)  # type: ignore[arg-type]
 
 
 def test_a_long_value_does_not_flood_the_message(written: Write) -> None:

@@ -167,13 +167,14 @@ RATE = 'rate = "0.245 N/mm" # bought'
         ('name = "boom"', 'name = " "', "arm.bodies[1].name: must be a text, got the text ' '"),
         # tables and lists
         ("[travel]", "travel = 3\n[friction2]", "friction2: is not a known key"),
+        ('{ body = "arm", at = ["0.12 m", "0 m"] }', '["0.12 m", "0 m"]', "path.last: must be a table with the keys body, at, got the list"),
         ('[friction]\ncoulomb = "0.2 N*m"', "[[friction]]\n[[friction]]", "friction: must be a table for each of 1 joint (arm), or one table for all, got 2"),
         ("[[payloads]]", "[payloads]", "payloads: must be a list, got the table"),
         ('[[limits]]\nwhat = "residual torque"\nat_most = "3 %"', "[limits]", "limits: must be a list, got the table"),
         ('[[payloads]]\nname = "crate"', '[[payloads]]\nmotor = 1\nname = "crate"', "payloads[1].motor: is not a known key"),
         # travel and gravity
-        ('to = "75 deg"', 'to = "-75 deg"', "travel: must run from the lower to the higher angle, got -1.0472 to -1.309 rad"),
-        ('to = "75 deg"', "to = 75", "travel.to: must be a text with a unit, such as '1 rad', got 75; write '75 rad'"),
+        ('to = "75 deg"', 'to = "-75 deg"', "travel: must run from the lower to the higher angle, got -60 deg to -75 deg"),
+        ('to = "75 deg"', "to = 75", "travel.to: must be a text with a unit, such as '1 deg', got 75; write '75 deg' if deg is meant"),
         ('magnitude = "9.8 m/s^2"', 'height = "1 m"', "gravity: must have latitude where it has height, got height alone"),
         ('magnitude = "9.8 m/s^2"', 'latitude = "99 deg"', "gravity: latitude must be from -1.5708 to 1.5708 rad, got 1.72788"),
         (
@@ -196,7 +197,8 @@ RATE = 'rate = "0.245 N/mm" # bought'
         ('at_most = "3 %"', 'at_most = "3 m"', "limits[1].at_most: torque must be a value in N*m, got '3 m'"),
         ('at_most = "3 %"', 'at_most = "-3 N*m"', "limits[1].at_most: torque must be > 0 N*m, got '-3 N*m'"),
         ('at_most = "3 %"', 'at_most = "0 %"', "limits[1].at_most: OfPeak.percent must be > 0, got 0.0"),
-        ('at_most = "3 %"', "at_most = 3", "limits[1].at_most: must be a text, got 3"),
+        ('at_most = "3 %"', "at_most = 3", "limits[1].at_most: must be a text, got 3; write it in quotes, with its unit or as a percentage"),
+        ('at_most = "3 %"', 'at_most = "3 %"\nover = [-30, 30]', "limits[1].over[1]: must be a text with a unit, such as '1 deg', got -30; write '-30 deg' if deg is meant"),
         ('at_most = "3 %"', 'at_most = "3 %"\nnorm = "mean"', "norm: ResidualTorque.norm must be 'worst' or 'rms', got 'mean'"),
         ('at_most = "3 %"', 'at_most = "3 %"\nover = ["9 deg", "9 deg"]', "limits[1].over: Limit.over must be (lower, higher) rad, got (0.15"),
         ('at_most = "3 %"', 'at_most = "3 %"\nover = ["900 deg", "9 deg"]', "limits[1].over: Limit.over must be within two turns, ±12.57 rad, got 15.708"),

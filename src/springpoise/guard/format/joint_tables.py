@@ -48,8 +48,7 @@ def _range(value: Any, place: Place, unit: str) -> tuple[float, float] | None:
     for key in ("from", "to"):
         at, text = place.key(key), table[key]
         if not isinstance(text, str):
-            example = f"; write '{text} {unit}' if {unit} is meant" if type(text) in {int, float} else ""
-            raise at.error(f"must be a text with a unit, such as '1 {unit}', got {Place.shown(text)}{example}")
+            raise at.without_unit(text, unit)
         try:
             ends.append(units.radian(text, "travel") if unit == "rad" else units.metre(text, "travel"))
         except SpringpoiseError as error:
@@ -57,7 +56,7 @@ def _range(value: Any, place: Place, unit: str) -> tuple[float, float] | None:
     low, high = ends
     if not low < high:
         what = "angle" if unit == "rad" else "length"
-        raise place.error(f"must run from the lower to the higher {what}, got {low:g} to {high:g} {unit}")
+        raise place.error(f"must run from the lower to the higher {what}, got {table['from']} to {table['to']}")
     return low, high
 
 

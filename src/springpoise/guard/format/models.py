@@ -158,8 +158,8 @@ def read_model(cls: type, value: Any, place: Place, registry: Registry) -> Any:
     PoiseFileError
         An unknown or missing key, a value of the wrong kind, or one that the model refuses.
     """
-    table = place.table(value)
     fields = fields_of(cls)
+    table = place.table(value, [f.key for f in fields if f.required])
     place.check_keys(table, [f.key for f in fields], [f.key for f in fields if f.required])
     given = {
         field.attribute.name: _read(field, table[field.key], place.key(field.key), registry)
@@ -200,6 +200,8 @@ def _read(field: _Field, value: Any, place: Place, registry: Registry) -> Any:
     if _called(field) in COUPLINGS:
         return COUPLINGS[_called(field)].read(value, place)
     if "write" in field.attribute.metadata:  # the field reads its own text
+        if type(value) in {int, float}:
+            raise place.error(f"must be a text, got {value}; write it in quotes, with its unit or as a percentage")
         return _own_text(field, place.text(value), place)
     if field.unit is not None:
         return _amount(field, value, place)
@@ -249,8 +251,7 @@ def _check_leaf(unit: str | None, value: Any, place: Place) -> None:
         if isinstance(value, bool) or not isinstance(value, int | float):
             raise place.error(f"must be a number without quotes, got {Place.shown(value)}")
     elif isinstance(value, bool) or not isinstance(value, str):
-        example = f"; write '{value} {unit}' if {unit} is meant" if type(value) in {int, float} else ""
-        raise place.error(f"must be a text with a unit, such as '1 {unit}', got {Place.shown(value)}{example}")
+        raise place.without_unit(value, unit)
 
 
 def _plain(hint: Any, value: Any, place: Place, registry: Registry) -> Any:

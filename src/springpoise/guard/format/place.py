@@ -41,10 +41,12 @@ class Place:
         """The complaint about what stands here."""
         return PoiseFileError(f"{self.file}: {self.keys}: {text}" if self.keys else f"{self.file}: {text}")
 
-    def table(self, value: Any) -> Mapping[str, Any]:
-        """``value``, which has to be a table."""
+    def table(self, value: Any, keys: Iterable[str] = ()) -> Mapping[str, Any]:
+        """``value``, which has to be a table, with these keys among others."""
         if not isinstance(value, Mapping):
-            raise self.error(f"must be a table, got {self.shown(value)}")
+            named = list(keys)
+            inside = f" with the {'key' if len(named) == 1 else 'keys'} {', '.join(named)}" if named else ""
+            raise self.error(f"must be a table{inside}, got {self.shown(value)}")
         return value
 
     def entries(self, value: Any) -> list[tuple[Place, Any]]:
@@ -58,6 +60,12 @@ class Place:
         if not isinstance(value, str) or not (may_be_empty or value.strip()):
             raise self.error(f"must be a text, got {self.shown(value)}")
         return value
+
+    def without_unit(self, value: Any, unit: str | None) -> PoiseFileError:
+        """The complaint about a value that is no text with a unit; who writes a bare angle means degrees."""
+        usual = "deg" if unit == "rad" else unit
+        hint = f"; write '{value} {usual}' if {usual} is meant" if type(value) in {int, float} else ""
+        return self.error(f"must be a text with a unit, such as '1 {usual}', got {self.shown(value)}{hint}")
 
     def check_keys(self, table: Mapping[str, Any], known: Iterable[str], required: Iterable[str] = ()) -> None:
         """Refuses keys that are not known, and tables that lack some."""
