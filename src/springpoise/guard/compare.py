@@ -216,8 +216,11 @@ def compare(
     """
     documents = [document_at(old), document_at(new)]
     for document in documents:
-        if document.open_springs:
-            raise InputError(f"{document.called}: must be complete to be compared, got springs that are left open")
+        if document.design is not None or document.open_springs:
+            raise InputError(
+                f"{document.called}: must be complete to be compared, got springs that are left open; "
+                "run the design and compare the file that it writes"
+            )
     a, b = (document.with_payload(payload) for document in documents)
     joints = joint_names(a.linkage)
     common = _common(a, b)

@@ -77,3 +77,9 @@ def test_what_cannot_be_compared(versions: tuple[Path, Path], written: Write) ->
     opened = written(('"0.245 N/mm"', '"open"'), name="c.poise.toml", behind='\n[design]\nmethod = "fit"\n')
     with pytest.raises(ValueError, match=r"c\.poise\.toml: must be complete to be compared, got springs that are left"):
         guard.compare(versions[0], opened)
+    sine = '\n[design]\nmethod = "sine"\nattach_radius = "0.1 m"\nanchor_height = "0.2 m"\n'
+    wanted = written(name="d.poise.toml", behind=sine)  # its springs are those that are given and stay
+    with pytest.raises(
+        ValueError, match=r"d\.poise\.toml: must be complete .* run the design and compare the file that"
+    ):
+        guard.compare(wanted, versions[0])

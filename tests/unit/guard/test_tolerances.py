@@ -13,6 +13,8 @@ import pytest
 
 from springpoise import Arm, Body, Mechanism, guard, tolerance
 from springpoise.errors import InputError, InputTypeError, PoiseFileError
+from springpoise.guard.builds.study import study_of
+from springpoise.guard.check import builds_of
 
 Write = Callable[..., Path]
 
@@ -96,6 +98,11 @@ def test_what_is_saved_reads_back(written: Write, tmp_path: Path) -> None:
         ("builds = 2000", "poses = 1", r"Tolerances\.poses must be a whole number from 2 to 2000, got 1"),
         ("builds = 2000", "adjusted_builds = 0", r"Tolerances\.adjusted_builds must be a whole .* to 20000, got 0"),
         ("builds = 2000", 'coverage = "101 %"', r"Tolerances\.coverage must be above 0 % and at most 100 %, got '101 %'"),
+        ("builds = 2000", "coverage = 99", r"Tolerances\.coverage must be above 0 % .*, got 99; write '99 %' if percent"),
+        ("builds = 2000", "coverage = 990", r"Tolerances\.coverage must be above 0 % and at most 100 %, got 990$"),
+        ('"5 %"', "0.05", r"tolerances\.residual_limit: must be a text, got 0\.05; write it in quotes, with its unit or"),
+        ('{ name = "anchor", field = "springs[0].path.first.at[1]", reach = "40 mm" }', '"springs[0].rigid_length"',
+         r"tolerances\.adjusters\[1\]: must be a table with the key field, got the text 'springs\[0\]\.rigid_length'"),
         ("builds = 2000", 'payload = "crte"', r"tolerances\.payload must be the name of a payload, got 'crte'; did you"),
         ('"5 %"', '"5 kg"', r"tolerances\.residual_limit: torque must be a value in N\*m, got '5 kg'"),
         ('"40 mm"', '"40 deg"', r"tolerances\.adjusters\[1\] of springs\[0\]\.path\.first\.at\[1\] must be .*got 40 deg"),
@@ -459,3 +466,26 @@ def test_what_changed(written: Write) -> None:
     assert next(one for one in first.changes if one.what.startswith("yield")).old is None
     assert str(guard.compare(old, written()).tolerance_changes[0]) == "residual limit: 5 %, gone"
     assert guard.compare(old, old).tolerance_changes == ()
+
+
+def test_long_names_keep_both_ends(written: Write) -> None:
+    """A cable's fields differ in their last letters, and a row that cannot be told from the next is no help."""
+    cable = """
+kind = "cable"
+along = [
+    { body = "ground", at = ["-0.3 m", "-0.4 m"] },
+    { centre = { body = "ground", at = ["0 m", "0.2 m"] }, radius = "10 mm", turn = "cw" },
+    { body = "arm", at = ["0.12 m", "0 m"] },
+]
+"""
+    straight = 'kind = "straight"\nfirst = { body = "ground", at = ["0 m", "0.2 m"] }\nlast = { body = "arm", at = ["0.12 m", "0 m"] }\n'
+    ends = ("centre.at[0]", "centre.at[1]")
+    spreads = ", ".join(f'{{ field = "springs[0].path.along[1].{end}", uniform = "1 mm" }}' for end in ends)
+    adjusters = ", ".join(f'{{ field = "springs[0].path.along[1].{end}" }}' for end in ends)
+    behind = f'[tolerances]\nresidual_limit = "9 N*m"\nbuilds = 50\nspreads = [{spreads}]\nadjusters = [{adjusters}]\n'
+    builds = builds_of(guard.load(written((straight, cable), behind=behind)))
+    assert builds is not None
+    text = str(study_of(builds))
+    for end in ends:  # a row for what it costs, and one for what it puts right
+        assert text.count(f"\n  springs[0]...along[1].{end} ") == 2
+    assert max(map(len, text.splitlines())) <= 120

@@ -21,7 +21,7 @@ LEVELS = (0.5, 0.95, 0.99)
 """Parts of the builds whose worst residual is reported [1]."""
 
 WIDTH = 100
-LABEL = 32
+LABEL = 34
 """Longest name of a spread or adjuster in a table."""
 
 
@@ -229,7 +229,11 @@ def _quantile(worst: Any, level: float) -> Any:
 
 
 def _cut(text: str, longest: int = LABEL) -> str:
-    return text if len(text) <= longest else text[: longest - 3] + "..."
+    """A label that fits its column: it is the end of a field's long name that tells it from the next."""
+    if len(text) <= longest:
+        return text
+    begin = (longest - 3) // 3
+    return f"{text[:begin]}...{text[begin + 3 - longest :]}"
 
 
 def _move(value: float, unit: str) -> str:
