@@ -16,8 +16,8 @@ from springpoise.guard.amounts import celsius, shown
 from springpoise.guard.builds.scattered import Builds
 from springpoise.guard.document import PoiseFile
 from springpoise.guard.files import load
-from springpoise.guard.joints import poses_over, shown_pose
-from springpoise.guard.limits.mechanism import Limit
+from springpoise.guard.joints import pose_at, poses_over, shown_pose
+from springpoise.guard.limits.mechanism import Limit, Stretch, coordinate_unit
 from springpoise.guard.limits.verdict import Case, LimitVerdict
 from springpoise.guard.limits.yields import BuildYield
 from springpoise.guard.service import at_temperature, service_of
@@ -37,7 +37,7 @@ class CheckReport:
     verdicts: tuple[LimitVerdict, ...]
     """One for each limit, in the file's order."""
     warnings: tuple[str, ...] = ()
-    """What is unwise about the springs, whatever the limits say: mounting, buckling, temperature."""
+    """What is unwise about the springs, whatever the limits say: mounting, buckling, temperature, overstretching."""
 
     @property
     def holds(self) -> bool:
@@ -203,13 +203,39 @@ def judge(document: PoiseFile, builds: Builds | None = None, limits: Sequence[Li
                 raise
             except SpringpoiseError as error:
                 raise kind(f"{document.called}: limits[{i + 1}]: {error}") from error
-    said = []
+    said = _overstretched(document)
     for one in caught:
         if issubclass(one.category, SpringWarning):
             said.append(str(one.message))
         else:
             warnings.warn_explicit(one.message, one.category, one.filename, one.lineno)
     return CheckReport(document.called, tuple(verdicts), tuple(dict.fromkeys(said)))
+
+
+def _overstretched(document: PoiseFile) -> list[str]:
+    """Springs under load outside what they permit, in words; those that a limit on stretch judges are left to it.
+
+    A spring that is slack there is left out too: it is idle, not strained.
+    """
+    mechanism = document.mechanism
+    judged = [one for one in document.limits if isinstance(one, Stretch) and one.over is None]
+    poses = poses_over(mechanism)
+    said = []
+    with np.errstate(all="ignore"):
+        states = mechanism.spring_states(poses)
+    for state, mount in zip(states, mechanism.springs, strict=True):
+        unit = coordinate_unit(mount)
+        if any(one.at_least[1] == unit and one.spring in (None, state.name) for one in judged):
+            continue
+        margin, load = (np.broadcast_to(np.asarray(each), poses.shape[:1]) for each in (state.margin, state.load))
+        strained = np.where(load != 0.0, margin, np.inf)
+        if np.any(strained < 0.0):
+            worst = int(np.nanargmin(strained))
+            outside, at = shown(-float(strained[worst]), unit), shown_pose(pose_at(mechanism, poses, worst))
+            said.append(
+                f"spring {state.name!r} is {outside} outside what it permits at {at}, and no limit on its stretch is stated"
+            )
+    return said
 
 
 def _worst(document: PoiseFile, limit: Limit, builds: Builds | None) -> LimitVerdict:

@@ -131,6 +131,26 @@ def test_stretch_of_one_spring_and_of_none(document: guard.PoiseFile) -> None:
     )
 
 
+def test_a_spring_strained_beyond_its_ends_is_a_warning_where_no_limit_judges_it(document: guard.PoiseFile) -> None:
+    path = document.mechanism.springs[0].path
+    greatest = math.sqrt(0.2**2 + 0.12**2 + 2 * 0.2 * 0.12 * math.sin(math.radians(60)))
+    short = SpringMount(ExtensionSpring(245.0, free_length=0.06, longest=0.25), path, name="short")
+    slack = SpringMount(ExtensionSpring(245.0, free_length=0.2, longest=0.4), path, name="slack")  # idle, not strained
+    wound = SpringMount(TorsionSpring(1.0, 0.0, ("-70 deg", "70 deg")), JointTravel(), name="wound")
+    both = attrs.evolve(document, mechanism=document.mechanism.with_springs([short, slack, wound]))
+    energy, stretch = guard.StoredEnergy(at_most="90 J"), guard.Stretch(at_least="5 mm", spring="short")
+    report = guard.check(attrs.evolve(both, limits=[energy]))
+    assert report.holds
+    assert report.warnings == (
+        f"spring 'short' is {1e3 * (greatest - 0.25):.2f} mm outside what it permits at -60.00 deg, "
+        "and no limit on its stretch is stated",
+        "spring 'wound' is 5.00 deg outside what it permits at 75.00 deg, and no limit on its stretch is stated",
+    )
+    judged = guard.check(attrs.evolve(both, limits=[energy, stretch]))
+    assert not judged.holds
+    assert [text.split("'")[1] for text in judged.warnings] == ["wound"]
+
+
 def test_a_spring_without_ends_is_by_far_inside(document: guard.PoiseFile) -> None:
     mount = SpringMount(TorsionSpring(1.0), JointTravel(), name="wound")
     free = attrs.evolve(document, mechanism=document.mechanism.with_springs(mount))
