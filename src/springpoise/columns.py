@@ -30,6 +30,9 @@ Rule = Literal["finite", ">= 0", "> 0"]
 _HEADING = re.compile(r"\s*(?P<name>[^\[\]]*?)\s*(?:\[(?P<unit>[^\[\]]*)\])?\s*")
 
 
+_DECIMAL_COMMA = re.compile(r"[-+]?\d+,\d+")
+
+
 class Column(NamedTuple):
     """A column of numbers that is looked for."""
 
@@ -107,10 +110,7 @@ def read_columns(
     ([0.1], [8.896], ({'by': ' me'},))
     """
     path = Path(file)
-    try:
-        text = path.read_text(encoding="utf-8-sig")
-    except (OSError, UnicodeDecodeError, ValueError) as error:
-        raise PoiseFileError(f"{path}: cannot be read as {called}: {error}") from error
+    text = _text_of(path, called)
     known = {**needed, **(optional or {})}
     numbered = _rows_of(path, text)
     if not numbered:
@@ -153,11 +153,17 @@ def heading_names(file: str | os.PathLike[str], called: str = "a table") -> tupl
         The file is missing, not text, or not CSV.
     """
     path = Path(file)
-    try:
-        rows = _rows_of(path, path.read_text(encoding="utf-8-sig"))
-    except (OSError, UnicodeDecodeError, ValueError) as error:
-        raise PoiseFileError(f"{path}: cannot be read as {called}: {error}") from error
+    rows = _rows_of(path, _text_of(path, called))
     return tuple(heading.name for heading in _split(path, rows[0][1])) if rows else ()
+
+
+def _text_of(path: Path, called: str) -> str:
+    try:
+        return path.read_text(encoding="utf-8-sig")
+    except UnicodeDecodeError as error:
+        raise PoiseFileError(f"{path}: cannot be read as {called}: {error}; save it as CSV in UTF-8") from error
+    except (OSError, ValueError) as error:
+        raise PoiseFileError(f"{path}: cannot be read as {called}: {error}") from error
 
 
 def _rows_of(path: Path, text: str) -> list[tuple[int, list[str]]]:
@@ -181,7 +187,8 @@ def _split(path: Path, cells: Sequence[str]) -> list[_Heading]:
     for cell in cells:
         match = _HEADING.fullmatch(cell)
         if match is None:
-            raise PoiseFileError(f"{path}: column must be named 'name [unit]', got {cell!r}")
+            hint = "; separate columns by commas or semicolons" if "\t" in cell else ""
+            raise PoiseFileError(f"{path}: column must be named 'name [unit]', got {cell!r}{hint}")
         name = match["name"].strip().lower().replace("_", " ")
         headings.append(_Heading(name, (match["unit"] or "").strip(), cell.strip()))
     return headings
@@ -226,8 +233,10 @@ def _number(path: Path, line: int, heading: _Heading, column: Column, cell: str)
             raise ValueError
         value = float(cell) * units.parse(f"1 {heading.unit}", column.unit, heading.name)
     except ValueError:
+        pointed = cell.strip().replace(",", ".")
+        hint = f"; write {pointed}, with a decimal point" if _DECIMAL_COMMA.fullmatch(cell.strip()) else ""
         raise PoiseFileError(
-            f"{path}, line {line}: {heading.name} must be a number in {heading.unit}, got {cell!r}"
+            f"{path}, line {line}: {heading.name} must be a number in {heading.unit}, got {cell!r}{hint}"
         ) from None
     kept = {"finite": True, ">= 0": value >= 0, "> 0": value > 0}[column.rule]
     if not (kept and math.isfinite(value)):

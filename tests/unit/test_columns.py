@@ -71,6 +71,10 @@ def test_others_keep_their_whole_heading(write: Write) -> None:
         ("length [m],load [kg]", "column 'load' must be .*N.*'1 kg'"),
         ("length [m],load [N],unloading [mm]", "column 'unloading' must be .*'1 mm'"),
         ("length [m] [m],load [N]", r"column must be named 'name \[unit\]', got 'length \[m\] \[m\]'"),
+        (
+            "length [m]\tload [N]",
+            r"column must be .*, got 'length \[m\]\\tload \[N\]'; separate columns by commas or semicolons",
+        ),
     ],
 )
 def test_a_wrong_heading(write: Write, heading: str, message: str) -> None:
@@ -83,6 +87,8 @@ def test_a_wrong_heading(write: Write, heading: str, message: str) -> None:
     [
         ("a,1,1", "length must be a number in mm, got 'a'"),
         ("1_0,1,1", "length must be a number in mm, got '1_0'"),
+        ('"-1,5",1,1', "length must be a number in mm, got '-1,5'; write -1.5, with a decimal point"),
+        ('"1,5,5",1,1', "length must be a number in mm, got '1,5,5'"),
         ("0,1,1", "length must be > 0 mm, got 0"),
         ("1,inf,1", "load must be finite, got inf"),
         ("1,nan,1", "load must be finite, got nan"),

@@ -106,7 +106,7 @@ def test_a_wrong_heading(write, heading, message):
     [
         ("C,abc,120,18,310,1", "rate must be a number in N/mm, got 'abc'"),
         ("C,,120,18,310,1", "rate must be a number in N/mm, got ''"),
-        ('C,"1,2",120,18,310,1', "rate must be a number in N/mm, got '1,2'"),
+        ('C,"1,2",120,18,310,1', "rate must be a number in N/mm, got '1,2'; write 1.2, with a decimal point"),
         ("C,1_2,120,18,310,1", "rate must be a number in N/mm, got '1_2'"),
         ("C,1.2 N/mm,120,18,310,1", "rate must be a number in N/mm, got '1.2 N/mm'"),
         ("C,-1.2,120,18,310,1", "rate must be > 0 N/mm, got -1.2"),
@@ -128,6 +128,13 @@ def test_a_wrong_cell_is_named_with_its_line(write, row, message):
     assert str(caught.value).startswith(str(path))
 
 
+def test_a_part_is_listed_once(write):
+    """An order for "2 x A-1" would not say which of the two springs is meant."""
+    path = write("# comment", HEADING, "", *ROWS, "A-1,1.4,120,18,310,4.50")
+    with pytest.raises(PoiseFileError, match=r"csv, line 6: part must be listed once, got 'A-1' again, as in line 4$"):
+        read_stock(path)
+
+
 @pytest.mark.parametrize(
     ("lines", "message"),
     [
@@ -147,8 +154,9 @@ def test_a_file_that_is_not_there_or_not_text(write, tmp_path):
         read_stock(tmp_path / "nowhere.csv")
     with pytest.raises(PoiseFileError, match="cannot be read as a stock list"):
         read_stock(tmp_path)
-    with pytest.raises(PoiseFileError, match="cannot be read as a stock list"):
-        read_stock(write(HEADING, "Ä,1,1,1,2,3", encoding="latin-1"))
+    for encoding in ("latin-1", "utf-16"):
+        with pytest.raises(PoiseFileError, match=r"cannot be read as a stock list: .*; save it as CSV in UTF-8$"):
+            read_stock(write(HEADING, "Ä,1,1,1,2,3", encoding=encoding))
 
 
 GOOD = {

@@ -111,8 +111,8 @@ def read_stock(file: str | FilePath) -> Stock:
     Raises
     ------
     PoiseFileError
-        The file is missing or not text, a column is missing, doubled or without a unit, or a
-        cell is not a number in range; the message names the file, line and column.
+        The file is missing or not text, a column is missing, doubled or without a unit, a cell is
+        not a number in range, or a part is listed twice; the message names the file, line and column.
     """
     table = read_columns(file, needed=_COLUMNS, texts=("part",), called="a stock list", row="spring")
     free, longest = table.numbers["free length"], table.numbers["longest length"]
@@ -121,6 +121,13 @@ def read_stock(file: str | FilePath) -> Stock:
             raise PoiseFileError(
                 f"{table.path}, line {line}: longest length must be > free length ({shortest:g}) m, got {greatest:g}"
             )
+    lines: dict[str, int] = {}
+    for line, part in zip(table.lines, table.texts["part"], strict=True):
+        if part in lines:
+            raise PoiseFileError(
+                f"{table.path}, line {line}: part must be listed once, got {part!r} again, as in line {lines[part]}"
+            )
+        lines[part] = line
     return Stock(
         parts=table.texts["part"],
         rate=table.numbers["rate"],
