@@ -80,7 +80,8 @@ def nominal(mechanism: Mechanism, q: Array, gravity: Any) -> Array:
     bad = np.flatnonzero(~np.all(np.isfinite(torque), axis=0))
     if bad.size:
         raise InputError(
-            f"mechanism.holding_torque must be finite over the poses, got NaN at {pose_text(mechanism, q[bad[0]])}"
+            f"mechanism.holding_torque must be finite over the poses, got NaN at {pose_text(mechanism, q[bad[0]])}; "
+            "is an end of a cable inside a disc there?"
         )
     return torque
 

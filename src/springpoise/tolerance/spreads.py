@@ -22,6 +22,8 @@ Array = NDArray[np.float64]
 
 PERCENT = re.compile(r"\s*([-+0-9.eE]+)\s*%\s*")
 
+KINDS = ("normal", "uniform", "samples", "listed")
+
 LOWEST, HIGHEST = 2.0**-54, 1.0 - 2.0**-53
 """A uniform draw is kept inside these, so that no normal one is infinite."""
 
@@ -30,6 +32,11 @@ def _shared(value: Any) -> str | None:
     if value is not None and (not isinstance(value, str) or not value):
         raise InputTypeError(f"Spread.shared must be the name of a batch or None, got {value!r}")
     return value
+
+
+def _known_kind(_: Any, __: Any, value: Any) -> None:
+    if value not in KINDS:
+        raise InputError(f"Spread.kind must be one of {', '.join(KINDS)}, got {value!r}; write Spread.normal('5 %')")
 
 
 @attrs.frozen
@@ -47,7 +54,7 @@ class Spread:
     'jig'
     """
 
-    kind: Literal["normal", "uniform", "samples", "listed"]
+    kind: Literal["normal", "uniform", "samples", "listed"] = attrs.field(validator=_known_kind)
     """``"normal"``, ``"uniform"``, ``"samples"`` (drawn with replacement) or ``"listed"`` (one a build, in order)."""
     width: Any
     """Standard deviation, half-width, or the samples: SI, a text with a unit, or ``"5 %"`` of the value."""
@@ -239,5 +246,6 @@ def refuse_unbuildable(
                 replaced(mechanism, {name: float(value)})
             except InputError as error:
                 raise InputError(
-                    f"spreads[{name!r}] must keep to values that can be built, got {value:.6g}: {error}"
+                    f"spreads[{name!r}] must keep to values that can be built, got {value:.6g}: {error}; "
+                    "a smaller width, or a uniform spread, does not reach so far"
                 ) from error

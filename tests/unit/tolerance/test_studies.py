@@ -62,7 +62,7 @@ STUDIES = [
         (
             {ANCHOR: Spread.uniform("0.1 m"), MASS: Spread.uniform("3 kg")},
             InputError,
-            r"can be built, got -.*Body\.mass must be >= 0 kg",
+            r"can be built, got -.*Body\.mass must be >= 0 kg.*; a smaller width, or a uniform spread, does not reach so far$",
         ),
     ],
 )
@@ -77,6 +77,8 @@ def test_one_field_twice_and_a_batch_without_a_name():
         scatter(mech, {RATE: Spread.normal(1), "springs[lift].spring.rate": Spread.normal(1)})
     with pytest.raises(InputTypeError, match=r"Spread\.shared must be the name of a batch or None, got 3"):
         Spread.normal(1, shared=3)
+    with pytest.raises(InputError, match=r"Spread\.kind must be one of normal, uniform, .*, got 'gauss'; write Spread"):
+        Spread("gauss", "4 %")
 
 
 @pytest.mark.parametrize(

@@ -103,7 +103,7 @@ class MethodComparison:
         for row in self.rows:
             if row.method == method:
                 return row
-        raise KeyError(method)
+        raise KeyError(f"{method!r} was not compared, only {', '.join(row.method for row in self.rows)}")
 
     def require(self) -> MethodComparison:
         """The result itself, or an error where no method can be sized.
