@@ -217,6 +217,42 @@ def test_a_box_without_a_multiple_of_the_resolution_is_refined_to_its_edges():
         assert one.anchor_height in heights
 
 
+def test_of_parts_that_leave_alike_the_front_has_the_one_that_loads_the_pivot_least():
+    """At one pose the line of force meets the pivot: every spring leaves the weight's torque there, sin(skew) of the peak."""
+    rates, skew, radius, height = [500.0, 450.0, 150.0, 400.0, 420.0], 0.3, 0.08, 0.2
+    many = len(rates)
+    stock = Stock(
+        parts=[f"p{rate:.0f}" for rate in rates], rate=rates, free_length=[0.05] * many,
+        initial_tension=[5.0] * many, longest=[1.0] * many,
+    )  # fmt: skip
+    poses, weight = np.array([0.5 * np.pi - skew, 0.0]), 2.0 * 9.80665
+    found = balance.search_stock(
+        ARM,
+        stock,
+        attach_radii=radius,
+        anchor_heights=height,
+        attach_skews=skew,
+        counts=1,
+        over=poses,
+        keep=1,
+        refine=0,
+    )
+    turned = radius * np.exp(1j * (poses + skew))
+    along = 1j * height - turned
+    length = np.abs(along)
+    loads = {}
+    for rate in rates:
+        force = (5.0 + rate * (length - 0.05)) * along / length
+        left = weight * 0.35 * np.cos(poses) - (np.conj(turned) * force).imag
+        if np.abs(left).max() <= weight * 0.35 * np.sin(skew) * (1 + 1e-9):
+            loads[f"p{rate:.0f}"] = np.abs(force - 1j * weight).max()
+    assert len(loads) >= 3
+    assert found.best.residual.worst == pytest.approx(weight * 0.35 * np.sin(skew), rel=1e-9)
+    lightest = min(found.pareto, key=lambda one: one.pivot_load)
+    assert lightest.part == min(loads, key=lambda name: loads[name])
+    assert lightest.pivot_load == pytest.approx(min(loads.values()), rel=1e-9)
+
+
 def test_many_mounts_of_few_springs_are_cut_too():
     told = []
     found = balance.search_stock(

@@ -81,7 +81,8 @@ class StockSearch:
     pareto: tuple[StockCandidate, ...]
     """Those that no other one beats in worst residual, number of springs and pivot load at once.
 
-    Taken from the candidates above and from the best part of each mount and count; of equals one.
+    Taken from the candidates above and from the best part of each mount and count, of parts that leave
+    alike the one that loads the pivot least; of equals one.
     """
     considered: int
     """How many candidates were tried: every part in every count at every mount of the grid, each value once."""

@@ -34,7 +34,7 @@ ROUNDING = 1e-9
 
 
 class BestPart(NamedTuple):
-    """The best part of one mount and count."""
+    """The best part of one mount and count; of parts that leave alike the one that loads the pivot least."""
 
     worst: float
     springs: int
@@ -168,11 +168,12 @@ class _ChunkScan:
             fits = roomy
         if not fits.size:
             return []
-        return self._scored(row.first + place, place, fits, geometry.pull[place], geometry.lever[place])
+        return self._scored(row.first + place, place, fits, geometry)
 
-    def _scored(self, mount: int, place: int, fits: Indices, pull: Array, lever: Array) -> list[_Best]:
+    def _scored(self, mount: int, place: int, fits: Indices, geometry: Geometry) -> list[_Best]:
         """The residuals of the springs that fit, as far as they matter: the best of each count."""
         columns, limit, base = self.columns, self.scan.limit, self.scan.base
+        pull, lever = geometry.pull[place], geometry.lever[place]
         candidates = (columns.springs * np.arange(columns.counts.size)[:, None] + fits).ravel()
         # Holding torque is minus what the spring exerts, so the spring's share is + load · lever.
         rate = np.multiply.outer(columns.counts, columns.rate[fits]).ravel()
@@ -201,7 +202,11 @@ class _ChunkScan:
         for start, group in zip(np.searchsorted(tried, [g.start for g in groups]), groups, strict=True):
             own = worst[start : np.searchsorted(tried, group.stop)]
             if own.size and own.min() <= limit:
-                at = start + int(np.argmin(own))
+                alike = start + np.flatnonzero(own <= own.min() * (1.0 + ROUNDING))
+                if alike.size > 1:  # where the worst pose is one at which the line of force meets the pivot
+                    loads = self._pivot_loads(geometry, place, rate[tried[alike]], offset[tried[alike]])
+                    alike = alike[[int(np.argmin(loads))]]
+                at = int(alike[0])
                 best.append(_Best(float(worst[at]), int(candidates[tried[at]]), place))
         return best
 
@@ -220,11 +225,15 @@ class _ChunkScan:
         places = np.array([one.place for one in best])
         parts, counts = np.array([columns.part_and_count(one.candidate) for one in best]).T
         rate, offset = counts * columns.rate[parts], counts * columns.offset[parts]
-        load = rate[:, None] * geometry.pull[places] + offset[:, None]
-        right = self.scan.bearing[0] - load * geometry.force_x[places]
-        up = self.scan.bearing[1] - load * geometry.force_y[places]
-        pivot_load = np.sqrt(np.max(right * right + up * up, axis=1)).tolist()
+        loads = self._pivot_loads(geometry, places, rate, offset).tolist()
         return [
-            BestPart(one.worst, count, pivot, one.candidate, row.first + one.place)
-            for one, count, pivot in zip(best, counts.tolist(), pivot_load, strict=True)
+            BestPart(one.worst, count, load, one.candidate, row.first + one.place)
+            for one, count, load in zip(best, counts.tolist(), loads, strict=True)
         ]
+
+    def _pivot_loads(self, geometry: Geometry, place: int | Indices, rate: Array, offset: Array) -> Array:
+        """Greatest force in the pivot over the poses [N], for each rate and offset at one place of a row, or each at its own."""
+        load = rate[:, None] * geometry.pull[place] + offset[:, None]
+        right = self.scan.bearing[0] - load * geometry.force_x[place]
+        up = self.scan.bearing[1] - load * geometry.force_y[place]
+        return np.asarray(np.sqrt(np.max(right * right + up * up, axis=1)))
