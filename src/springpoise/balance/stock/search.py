@@ -23,11 +23,12 @@ from springpoise.balance.stock.misses import Misses
 from springpoise.balance.stock.mounts import Mounts
 from springpoise.balance.stock.refine import Box, Refiner, refined
 from springpoise.balance.stock.route import PulleyRoute, Routing
-from springpoise.balance.stock.scan import Scan, Tally
+from springpoise.balance.stock.scan import OVERSTRETCHED, SLACK, Scan, Tally
 from springpoise.errors import InputError, InputTypeError
 from springpoise.executors import check_executor, run
 from springpoise.linkages import Arm
 from springpoise.mechanism import Mechanism
+from springpoise.paths import Cable
 from springpoise.units import ScalarLike
 
 __all__ = ["PulleyRoute", "StockCandidate", "StockSearch", "search_stock"]
@@ -168,8 +169,8 @@ def search_stock(
         candidates=tuple(fits),
         pareto=tuple(pareto_front([*fits, *(one for one in fronts if one.residual.worst <= limit)], _merit)),
         considered=considered,
-        rejected={reason: number for reason, number in tally.counted.items() if number},
-        nearest_miss=None if fits else _nearest_miss(scan, listed, ranked, executor),
+        rejected={_with_margin(reason, margin): number for reason, number in tally.counted.items() if number},
+        nearest_miss=None if fits else _nearest_miss(scan, listed, ranked, margin, executor),
         residual_limit=None if residual_limit is None else limit,
     )
 
@@ -193,7 +194,7 @@ def _refined_ranking(scan: Scan, tally: Tally, listed: Stock, refiner: Refiner, 
 
 
 def _nearest_miss(
-    scan: Scan, listed: Stock, ranked: list[StockCandidate], executor: Executor | None
+    scan: Scan, listed: Stock, ranked: list[StockCandidate], margin: float, executor: Executor | None
 ) -> StockCandidate | None:
     """Where nothing fits, what lacks least: in the residual, or else in the lengths of springs."""
     if ranked:
@@ -202,8 +203,25 @@ def _nearest_miss(
     nearest = run(Misses(scan.mounts, scan.columns), scan.mounts.chunks, executor)
     if not nearest.reason:
         return None
-    lacks = f"{nearest.reason}, by {1e3 * nearest.short:.3g} mm"
-    return attrs.evolve(_taken(scan, listed, nearest.part, nearest.mount), lacks=lacks)
+    lacks = f"{_with_margin(nearest.reason, margin)}, by {1e3 * nearest.short:.3g} mm"
+    missed = _taken(scan, listed, nearest.part, nearest.mount)
+    if nearest.reason == SLACK and _leaves_pulley(missed, scan.mounts[nearest.mount].routing.poses):
+        lacks += "; its cable leaves the pulley at some poses"
+    return attrs.evolve(missed, lacks=lacks)
+
+
+def _with_margin(reason: str, margin: float) -> str:
+    """A reason in words that are true of springs that would do but for the margin to be kept."""
+    return (
+        f"{reason}, or nearer to it than {1e3 * margin:.4g} mm"
+        if margin and reason in (SLACK, OVERSTRETCHED)
+        else reason
+    )
+
+
+def _leaves_pulley(one: StockCandidate, poses: Array) -> bool:
+    path = one.mechanism.springs[-1].path
+    return isinstance(path, Cable) and bool(np.any(path.wraps(one.mechanism.linkage, poses)[0] == 0.0))
 
 
 def _merit(one: StockCandidate) -> tuple[float, int, float]:
