@@ -9,11 +9,11 @@ import attrs
 import numpy as np
 
 from springpoise.balance.amounts import best_amounts
+from springpoise.balance.fitted_mounts import mounts_to_fit, rows_of_mounts
 from springpoise.balance.residuals import Residual, poses_over, residual, shown_pose
 from springpoise.errors import InputError, InputTypeError, NoSolution
-from springpoise.mechanism import Mechanism, SpringMount
-from springpoise.springs import ScaledSpring
-from springpoise.tables import facts, number
+from springpoise.mechanism import Mechanism
+from springpoise.tables import facts
 
 __all__ = ["SpringFit", "fit_springs"]
 
@@ -70,28 +70,11 @@ class SpringFit:
 
     def __str__(self) -> str:
         rows = [("status", self.status), ("residual", str(self.residual))]
-        for index, mount in enumerate(self.mechanism.springs):
-            times = f"{mount.count} x " if mount.count > 1 else ""
-            rows.append((self.mechanism.mount_name(index), times + _described(mount)))
+        rows += rows_of_mounts(self.mechanism)
         rows += [(name, "best left out") for name in self.left_out]
         if self.equal_poses:
             rows.append(("worst at", shown_pose(self.equal_poses, "rad" if self.residual.unit == "N*m" else "m")))
         return f"spring fit ({self.norm})\n" + facts(rows)
-
-
-def _described(mount: SpringMount) -> str:
-    spring: Any = mount.spring
-    if isinstance(spring, ScaledSpring):
-        return f"{number(spring.factor, '1')} times {type(spring.spring).__name__}"
-    parts = []
-    fields = attrs.fields_dict(type(spring)) if attrs.has(type(spring)) else {}
-    for name in ("rate", "initial_tension", "free_angle", "pull"):
-        if name in fields:
-            unit = fields[name].metadata.get("unit", "1")
-            parts.append(f"{name.replace('_', ' ')} {number(getattr(spring, name), unit)}")
-    if mount.rigid_length:
-        parts.append(f"rigid length {number(mount.rigid_length, 'm')}")
-    return f"{type(spring).__name__}: " + ", ".join(parts)
 
 
 def fit_springs(
@@ -162,7 +145,10 @@ def fit_springs(
         raise InputError(f"preload must be 'spring', 'mount' or 'none', got {preload!r}")
     if gravity is not None:
         mechanism = attrs.evolve(mechanism, gravity=gravity)
-    free = _free_mounts(mechanism, fixed)
+    free = list(mounts_to_fit(mechanism, fixed))
+    if not free:
+        count = len(mechanism.springs)
+        raise InputError(f"mechanism must have a spring to fit, got {count} mounts of which {count} stay fixed")
     q = poses_over(mechanism, over)
     size = residual(mechanism.with_springs(()), q).peak_gravity_torque
     found = best_amounts(mechanism, free, q, norm=norm, preload=preload)
@@ -171,23 +157,3 @@ def fit_springs(
     held = norm == "minimax" and worst > ROUNDING * size
     equal = tuple(float(x) for x in q[left >= worst * (1 - 1e-6)]) if held else ()
     return SpringFit(found.mechanism, norm, residual(found.mechanism, q), found.left_out, found.settled, equal[:8])
-
-
-def _free_mounts(mechanism: Mechanism, fixed: Sequence[str | int]) -> list[int]:
-    names = [mechanism.mount_name(i) for i in range(len(mechanism.springs))]
-    stay = set()
-    for which in [fixed] if isinstance(fixed, str | int) else fixed:
-        if isinstance(which, str) and which in names:
-            stay.add(names.index(which))
-        elif isinstance(which, int) and not isinstance(which, bool) and 0 <= which < len(names):
-            stay.add(which)
-        else:
-            raise InputError(
-                f"fixed must name mounts of the mechanism ({', '.join(names) or 'it has none'}), got {which!r}"
-            )
-    free = [i for i in range(len(names)) if i not in stay]
-    if not free:
-        raise InputError(
-            f"mechanism must have a spring to fit, got {len(names)} mounts of which {len(stay)} stay fixed"
-        )
-    return free

@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 from springpoise import units
 from springpoise.balance.chains.fit import joint_residuals
+from springpoise.balance.fitted_mounts import mounts_to_fit
 from springpoise.balance.placing.free import Plain
 from springpoise.balance.placing.knobs import Knob, box_of, knobs_of
 from springpoise.balance.placing.limits import Rules, limits_of, point_of, worst_of
@@ -194,7 +195,9 @@ def placed(
     first = built(build, middle, None, gravity)
     _check_bodies(first, rules, middle)
     q = poses_of_joints(first, over)
-    free = () if fit == "none" else _free_mounts(first, fixed)
+    if fit != "none" and not first.springs:
+        raise InputError("build must make a mechanism with at least one spring, got none")
+    free = () if fit == "none" else mounts_to_fit(first, fixed)
     raw = sizable(first, free)
     layout = layout_of(raw, free, fit, q)
     base = tuple(nominal(raw, layout, q))
@@ -321,23 +324,6 @@ def _check_bodies(mechanism: Mechanism, rules: Rules, values: Mapping[str, float
     for name, point in [*points, *(("keep_out", centre) for centre, _ in rules.keep_out)]:
         if point.body not in frames:
             raise InputError(f"{name} must name points of {', '.join(map(repr, frames))}, got one of {point.body!r}")
-
-
-def _free_mounts(mechanism: Mechanism, fixed: Sequence[str | int]) -> tuple[int, ...]:
-    names = [mechanism.mount_name(i) for i in range(len(mechanism.springs))]
-    stay = set()
-    for which in [fixed] if isinstance(fixed, str | int) else fixed:
-        if isinstance(which, str) and which in names:
-            stay.add(names.index(which))
-        elif isinstance(which, int) and not isinstance(which, bool) and 0 <= which < len(names):
-            stay.add(which)
-        else:
-            raise InputError(
-                f"fixed must name mounts of the mechanism ({', '.join(names) or 'it has none'}), got {which!r}"
-            )
-    if not names:
-        raise InputError("build must make a mechanism with at least one spring, got none")
-    return tuple(i for i in range(len(names)) if i not in stay)
 
 
 def _limit(value: ScalarLike, unit: str, name: str, *, zero: bool = False) -> float:

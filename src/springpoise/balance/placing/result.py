@@ -9,7 +9,7 @@ from typing import Any
 import attrs
 
 from springpoise.balance.chains.fit import JointResidual
-from springpoise.balance.fit import _described
+from springpoise.balance.fitted_mounts import rows_of_mounts
 from springpoise.balance.residuals import Residual, shown_pose
 from springpoise.errors import NoSolution
 from springpoise.mechanism import Mechanism
@@ -185,9 +185,7 @@ class Placement:
         if len(self.joints) > 1:
             rows += [(f"  joint {one.name}", _of_joint(one)) for one in self.joints]
         rows += [(one.name, one._text(self.residual.unit)) for one in self.knobs]
-        for index, mount in enumerate(self.mechanism.springs):
-            times = f"{mount.count} x " if mount.count > 1 else ""
-            rows.append((self.mechanism.mount_name(index), times + _described(mount)))
+        rows += rows_of_mounts(self.mechanism)
         rows += [(name, "best left out") for name in self.left_out]
         rows += [(one.name, str(one)) for one in self.limits]
         if self.why is not None:
