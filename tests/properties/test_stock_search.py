@@ -323,7 +323,8 @@ def test_a_long_list_against_the_formula_written_out(seed, parts, share, margin,
     slack = np.broadcast_to(length.min(-1) - margin - free[:, None, None, None] <= 0, worst.shape)
     over = np.broadcast_to(length.max(-1) + margin - longest[:, None, None, None] > 0, worst.shape) & ~slack
     above = ~slack & ~over & (worst > limit)
-    expected = {SLACK: int(slack.sum()), OVER: int(over.sum()), LIMIT: int(above.sum())}
+    near = f", or nearer to it than {1e3 * margin:g} mm" if margin else ""
+    expected = {SLACK + near: int(slack.sum()), OVER + near: int(over.sum()), LIMIT: int(above.sum())}
     assert found.rejected == {reason: number for reason, number in expected.items() if number}
     left = np.where(slack | over | above, np.inf, worst).min(axis=(2, 3, 4)).ravel()
     ranked = np.sort(left)[:keep]

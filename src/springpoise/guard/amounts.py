@@ -160,7 +160,8 @@ def share_of(value: Any, name: str) -> float:
     """A share above 0 and at most 1, given as a number or as a text such as ``"95 %"``."""
     share = units.parse(value, "1", name) if isinstance(value, str) and "%" in value else units.number(value, name)
     if not isinstance(share, float) or not 0.0 < share <= 1.0:
-        hint = f"; write '{value:g} %' if percent is meant" if type(value) in {int, float} and 1 < value <= 100 else ""
+        meant = isinstance(value, int | float) and 1 < value <= 100
+        hint = f"; write '{value:g} %' if percent is meant" if meant else ""
         raise InputError(f"{name} must be above 0 % and at most 100 %, got {value!r}{hint}")
     return share
 
