@@ -10,11 +10,11 @@ import numpy as np
 
 from springpoise.carriers import Carrier, namespace
 from springpoise.errors import InputError, InputTypeError
-from springpoise.feedforward.actuator import Actuator, signal
 from springpoise.mechanism import Mechanism
 from springpoise.mechanism.sums import joined
 
-if TYPE_CHECKING:  # recording is loaded when it is asked for
+if TYPE_CHECKING:  # recording and motors are loaded when they are asked for
+    from springpoise.feedforward.actuator import Actuator
     from springpoise.tape import Program
 
 __all__ = ["Feedforward"]
@@ -29,7 +29,15 @@ def _mechanism(value: Any) -> Mechanism:
     return value
 
 
+def _no_motor() -> Actuator:
+    from springpoise.feedforward.actuator import Actuator
+
+    return Actuator()
+
+
 def _actuator(value: Any) -> Actuator | tuple[Actuator, ...]:
+    from springpoise.feedforward.actuator import Actuator
+
     if isinstance(value, Actuator):
         return value
     if isinstance(value, Sequence) and value and all(isinstance(item, Actuator) for item in value):
@@ -69,7 +77,7 @@ class Feedforward:
 
     mechanism: Mechanism = attrs.field(converter=_mechanism)
     """The mechanism as it is built."""
-    actuator: Actuator | tuple[Actuator, ...] = attrs.field(default=Actuator(), converter=_actuator, kw_only=True)
+    actuator: Actuator | tuple[Actuator, ...] = attrs.field(factory=_no_motor, converter=_actuator, kw_only=True)
     """Motor and gear of the joint, or of every joint alike; or a sequence with one for each joint.
 
     By default none, with ratio 1, which is enough for torques.
@@ -166,6 +174,8 @@ class Feedforward:
         InputError
             As ``current``.
         """
+        from springpoise.feedforward.actuator import signal
+
         rates = self._each(velocity if isinstance(velocity, tuple) else signal(velocity, "rad/s", "velocity"))
         ways = [None] * len(rates) if moving is None else self._each(_direction(moving))
         torques = self._each(self.mechanism.holding_torque(q, gravity))
