@@ -7,7 +7,6 @@ from collections import deque
 from collections.abc import Callable
 from concurrent.futures import Executor, Future
 from functools import lru_cache
-from itertools import pairwise
 from typing import Any, Protocol, TypeVar
 
 import numpy as np
@@ -16,8 +15,11 @@ from springpoise.errors import InputTypeError
 
 __all__ = ["Job", "check_executor", "run"]
 
-TASKS, WORKERS = 3, 8
-"""Tasks for each worker, so that they finish together, and how many workers there are where an executor does not say."""
+WORKERS = 8
+"""How many workers there are where an executor does not say."""
+
+SHORTEST = 2
+"""Chunks of a task at the least, but for the last."""
 
 LONGEST, AHEAD = 16, 256
 """Chunks of a task at the most, since one that has begun is not interrupted; tasks that are handed in ahead."""
@@ -73,8 +75,7 @@ def run(
     """
     check_executor(executor)
     workers = getattr(executor, "_max_workers", WORKERS)  # the pools of the standard library have it
-    tasks = max(min(chunks, TASKS * workers), -(-chunks // LONGEST))
-    bounds = list(pairwise(chunks * task // tasks for task in range(tasks + 1)))
+    bounds = _tasks(chunks, workers)
     parts: list[_Part] = []
 
     def done(part: _Part) -> None:
@@ -101,6 +102,18 @@ def run(
             future.cancel()
         raise
     return job.joined(parts)
+
+
+def _tasks(chunks: int, workers: int) -> list[tuple[int, int]]:
+    """First chunk of each task and the chunk behind its last: long ones, then shorter ones, so that all end together."""
+    bounds = []
+    first = 0
+    while first < chunks:
+        share = -(-(chunks - first) // (2 * workers))
+        last = min(first + max(SHORTEST, min(share, LONGEST)), chunks)
+        bounds.append((first, last))
+        first = last
+    return bounds
 
 
 @lru_cache(maxsize=2)

@@ -206,7 +206,7 @@ def test_what_a_search_sends_is_small_and_holds_no_names_or_prices():
     here = Here()
     _search(here)
     assert len(set(here.sent)) == 1
-    assert len(here.sent) == executors.TASKS * executors.WORKERS
+    assert len(here.sent) > executors.WORKERS
     assert len(here.sent[0]) < 40_000
     assert b"p149" not in here.sent[0]
     assert b"shelf" not in here.sent[0]
@@ -256,6 +256,16 @@ def test_the_first_error_of_a_worker_comes_through_and_the_rest_is_not_begun(stu
         study(failing)
     assert len(failing.begun) > 1
     assert all(future.cancelled() for future in failing.begun[1:])
+
+
+@pytest.mark.parametrize("workers", [1, 2, 8, 500])
+@pytest.mark.parametrize("chunks", [1, 2, 49, 5000])
+def test_tasks_take_every_chunk_once_and_grow_no_longer(chunks, workers):
+    tasks = executors._tasks(chunks, workers)
+    assert [chunk for first, last in tasks for chunk in range(first, last)] == list(range(chunks))
+    lengths = [last - first for first, last in tasks]
+    assert lengths == sorted(lengths, reverse=True)
+    assert max(lengths) <= executors.LONGEST
 
 
 def test_progress_counts_candidates_and_ends_with_all_of_them():
