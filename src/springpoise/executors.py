@@ -18,9 +18,6 @@ __all__ = ["Job", "check_executor", "run"]
 WORKERS = 8
 """How many workers there are where an executor does not say."""
 
-SHORTEST = 2
-"""Chunks of a task at the least, but for the last."""
-
 LONGEST, AHEAD = 16, 256
 """Chunks of a task at the most, since one that has begun is not interrupted; tasks that are handed in ahead."""
 
@@ -110,7 +107,7 @@ def _tasks(chunks: int, workers: int) -> list[tuple[int, int]]:
     first = 0
     while first < chunks:
         share = -(-(chunks - first) // (2 * workers))
-        last = min(first + max(SHORTEST, min(share, LONGEST)), chunks)
+        last = min(first + min(share, LONGEST), chunks)
         bounds.append((first, last))
         first = last
     return bounds

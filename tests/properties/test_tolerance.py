@@ -226,8 +226,8 @@ def test_threads_and_groups_of_chunks_change_nothing(builds, monkeypatch):
     mech = _arm(3)
     alone = scatter(mech, SPREADS, builds=builds, over=Q, seed=5)
     with ThreadPoolExecutor(3) as threads:
-        for tasks in (1, 2, 24):
-            monkeypatch.setattr("springpoise.executors.TASKS", tasks)
+        for longest in (1, 2, 24):
+            monkeypatch.setattr("springpoise.executors.LONGEST", longest)
             shared = scatter(mech, SPREADS, builds=builds, over=Q, seed=5, executor=threads)
             assert np.array_equal(alone.worst, shared.worst)
             assert np.array_equal(alone.bands, shared.bands)
