@@ -283,7 +283,9 @@ def test_progress_counts_candidates_and_ends_with_all_of_them():
 # ------------------------------------------------------------------------------------ interrupting
 
 LONG_RUN = """
+import signal
 import sys
+signal.signal(signal.SIGINT, signal.default_int_handler)  # a shell may have started the tests with it ignored
 from concurrent.futures import ProcessPoolExecutor
 sys.path.insert(0, {folder!r})
 from test_executors import SPREADS, _arm, _place, _search
